@@ -1,0 +1,171 @@
+"""Chebyshev fits, interpolated curves and the accelerated fixed point that every solve of the plant uses.
+
+Nothing here knows about steam or money. Arrays in, arrays out, and nothing fails in silence.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from appraise.errors import SolveError
+
+Array = NDArray[np.float64]
+
+
+def chebyshev_basis(x: Array, number: int) -> Array:
+    """First `number` Chebyshev polynomials at x [point] in [-1, 1]; returns [number, point]."""
+    basis = np.empty((number, x.size))
+    basis[0] = 1.0
+    if number > 1:
+        basis[1] = x
+    twice = 2.0 * x
+    for k in range(2, number):
+        np.multiply(twice, basis[k - 1], out=basis[k])
+        basis[k] -= basis[k - 2]
+    return basis
+
+
+def chebyshev_nodes(low: float, high: float, number: int) -> Array:
+    """Chebyshev nodes of the first kind on [low, high]; returns [number]."""
+    angle = np.pi * (np.arange(number) + 0.5) / number
+    return np.asarray(0.5 * (low + high) - 0.5 * (high - low) * np.cos(angle))
+
+
+def _coefficients(values: Array) -> Array:
+    """Chebyshev coefficients along the last axis from values at the nodes (discrete orthogonality)."""
+    number = values.shape[-1]
+    unit = chebyshev_basis(-np.cos(np.pi * (np.arange(number) + 0.5) / number), number)
+    coefficients = 2.0 / number * values @ unit.T
+    coefficients[..., 0] *= 0.5
+    return np.asarray(coefficients)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Fit:
+    """Several smooth functions of one variable, fitted together on [low, high].
+
+    `coefficients` is [function, order]. Calling with any shape gives [function, *shape].
+    """
+
+    low: float
+    high: float
+    coefficients: Array
+
+    @classmethod
+    def of(cls, function: Callable[[Array], Array], low: float, high: float, order: int) -> Fit:
+        """Fit `function`, which maps [node] to [function, node]."""
+        return cls(low, high, _coefficients(np.atleast_2d(function(chebyshev_nodes(low, high, order)))))
+
+    def covers(self, x: Array) -> bool:
+        """Whether every element of x lies in the fitted range."""
+        return x.size == 0 or bool(x.min() >= self.low and x.max() <= self.high)
+
+    def __call__(self, x: Array) -> Array:
+        unit = (2.0 * x.ravel() - (self.low + self.high)) / (self.high - self.low)
+        values = self.coefficients @ chebyshev_basis(unit, self.coefficients.shape[1])
+        return np.asarray(values.reshape(-1, *x.shape))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Fit2:
+    """A smooth function of two variables on a rectangle; `coefficients` is [order x, order y]."""
+
+    x: tuple[float, float]
+    y: tuple[float, float]
+    coefficients: Array
+
+    @classmethod
+    def of(
+        cls,
+        function: Callable[[Array, Array], Array],
+        x: tuple[float, float],
+        y: tuple[float, float],
+        order: tuple[int, int],
+    ) -> Fit2:
+        """Fit `function`, which maps two flat arrays to one of the same size."""
+        nodes_x, nodes_y = chebyshev_nodes(*x, order[0]), chebyshev_nodes(*y, order[1])
+        grid_x, grid_y = (g.ravel() for g in np.meshgrid(nodes_x, nodes_y, indexing="ij"))
+        values = function(grid_x, grid_y).reshape(order)
+        return cls(x, y, np.asarray(_coefficients(_coefficients(values).T).T))
+
+    def covers(self, x: Array, y: Array) -> NDArray[np.bool_]:
+        """Element by element, whether the point lies in the fitted rectangle."""
+        return np.asarray((x >= self.x[0]) & (x <= self.x[1]) & (y >= self.y[0]) & (y <= self.y[1]))
+
+    def __call__(self, x: Array, y: Array) -> Array:
+        unit_x = (2.0 * x.ravel() - (self.x[0] + self.x[1])) / (self.x[1] - self.x[0])
+        unit_y = (2.0 * y.ravel() - (self.y[0] + self.y[1])) / (self.y[1] - self.y[0])
+        rows = self.coefficients @ chebyshev_basis(unit_y, self.coefficients.shape[1])
+        rows *= chebyshev_basis(unit_x, self.coefficients.shape[0])
+        return np.asarray(rows.sum(axis=0).reshape(x.shape))
+
+
+def require_finite(name: str, values: ArrayLike) -> Array:
+    """Return `values` as an array, or raise SolveError naming the first element that is not finite."""
+    array = np.asarray(values, dtype=float)
+    bad = ~np.isfinite(array)
+    if bad.any():
+        first = int(np.flatnonzero(bad.ravel())[0])
+        raise SolveError(f"{name}: element {first} of {array.size} is not finite")
+    return array
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class FixedPoint:
+    """Where an iteration came to rest: `x` [unknown, point] and whether each point did."""
+
+    x: Array
+    converged: NDArray[np.bool_]
+
+
+def fixed_point(
+    step: Callable[[Array, NDArray[np.intp]], Array],
+    start: Array,
+    *,
+    tolerance: float = 1e-11,
+    iterations: int = 60,
+) -> FixedPoint:
+    """Solve x = step(x) for many points at once by Broyden's method (Broyden, Math. Comp. 19 (1965) 577).
+
+    start : [unknown, point]. step : (x [unknown, active], indices of the active points) -> the improved x.
+    A plain substitution is the first step; each later one corrects the inverse Jacobian by a rank-one
+    update, point by point, so that unknowns which feed on each other do not slow one another down. Points
+    at rest to `tolerance` (absolute, on every unknown) leave the work.
+    """
+    number, points = start.shape
+    x = start.copy()
+    converged = np.zeros(points, dtype=bool)
+    active = np.arange(points)
+    inverse = np.broadcast_to(np.eye(number)[:, :, None], (number, number, points)).copy()
+    residual = step(x, active) - x
+    for _ in range(iterations):
+        rest = np.abs(residual).max(axis=0) <= tolerance
+        if rest.any():
+            at_rest = active[rest]
+            x[:, at_rest] += residual[:, rest]
+            converged[at_rest] = True
+            keep = ~rest
+            active, residual, inverse = active[keep], residual[:, keep], inverse[:, :, keep]
+        if active.size == 0:
+            break
+        move = np.einsum("ijp,jp->ip", inverse, residual)
+        x[:, active] += move
+        updated = step(x[:, active], active) - x[:, active]
+        inverse = _broyden_update(inverse, move, updated - residual)
+        residual = updated
+    return FixedPoint(x, converged)
+
+
+def _broyden_update(inverse: Array, move: Array, change: Array) -> Array:
+    """Sherman–Morrison form of Broyden's update of the inverse of -J, point by point."""
+    # r(x) is the residual and move = B r with B = -J^-1, so the secant condition is B (-change) = move.
+    image = np.einsum("ijp,jp->ip", inverse, -change)
+    row = np.einsum("ip,ijp->jp", move, inverse)
+    denominator = np.einsum("jp,jp->p", row, -change)
+    safe = np.abs(denominator) > 1e-30
+    scale = np.where(safe, 1.0 / np.where(safe, denominator, 1.0), 0.0)
+    return np.asarray(inverse + (move - image)[:, None, :] * row[None, :, :] * scale)
