@@ -1,0 +1,1 @@
+"""The case: its file and its hours, read and checked."""
