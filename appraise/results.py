@@ -1,0 +1,160 @@
+"""What `run` hands over besides the workbook: the study as JSON, and a summary on the screen."""
+
+from __future__ import annotations
+
+from textwrap import fill
+from typing import TYPE_CHECKING, Any
+
+from appraise.output import percent, plain
+from appraise.tables import WIDTH, Cell, Column, heading, table
+
+if TYPE_CHECKING:
+    from appraise.cash_flow import CashFlow
+    from appraise.checks import Check
+    from appraise.measures import Measures
+    from appraise.study import Study
+
+
+def study_json(study: Study) -> dict[str, Any]:
+    """The results of a study under the names that other people's scripts rely on."""
+    return {
+        "study": _about(study),
+        "design_point": plain(study.balances, "design_point"),
+        "year": plain([one for row in study.year_figures for one in row], "year"),
+        "capex": plain(study.capital, "capex"),
+        "cash_flow": [
+            _flow(study, flow, told)
+            for run, row in zip(study.runs, study.measures, strict=True)
+            for flow, told in zip(run.flows, row, strict=True)
+        ],
+        "scenarios": _scenarios(study),
+        "tornado": plain(study.tornado, "tornado"),
+        "checks": plain(study.checks, "checks"),
+    }
+
+
+def _about(study: Study) -> dict[str, Any]:
+    from appraise import __version__
+
+    loaded, about = study.loaded, study.case.study
+    return {
+        "title": about.title,
+        "currency": about.currency,
+        "price_year": about.price_year,
+        "first_year": about.first_year,
+        "years": about.years,
+        "reference_scenario": about.reference_scenario,
+        "version": __version__,
+        "case_sha256": loaded.case_sha256,
+        "hours_sha256": loaded.hours_sha256,
+    }
+
+
+def _flow(study: Study, flow: CashFlow, told: Measures) -> dict[str, Any]:
+    place = f"cash_flow of {flow.option} in {flow.scenario}"
+    return {
+        "scenario": flow.scenario,
+        "option": flow.option,
+        "basis": study.case.finance.basis,
+        "calendar_year": [int(year) for year in flow.years],
+        "lines": plain(flow.lines, place),
+        "net": plain(flow.net, place),
+        **plain(told, place),
+    }
+
+
+def _scenarios(study: Study) -> dict[str, Any]:
+    names, keys = list(study.case.scenarios), [option.key for option in study.case.options]
+    compared = study.comparison
+    return {
+        "best": {name: keys[best] for name, best in zip(names, compared.best, strict=True)},
+        "worst_npv": dict(zip(keys, compared.worst.tolist(), strict=True)),
+        "largest_regret": dict(zip(keys, compared.largest_regret.tolist(), strict=True)),
+        "regret": {
+            name: dict(zip(keys, row, strict=True))
+            for name, row in zip(names, compared.regret.tolist(), strict=True)
+        },
+    }
+
+
+def run_summary(study: Study) -> str:
+    """The answer in two tables: the options in the reference scenario, and NPV in every scenario."""
+    about = study.case.study
+    parts = [
+        heading(about.title),
+        f"Scenario {about.reference_scenario}, {_money(study)}, against the baseline:",
+        _options_table(study),
+        f"Net present value by scenario, thousand {about.currency}; the best option of each is starred:",
+        _scenario_table(study),
+        _closing(study),
+    ]
+    return "\n\n".join(parts)
+
+
+def _money(study: Study) -> str:
+    about, basis = study.case.study, study.case.finance.basis
+    year = f"of {about.price_year}" if basis == "real" else "of the day"
+    return (
+        f"money {year} in thousand {about.currency} at {100 * study.case.finance.discount_rate:g} % {basis}"
+    )
+
+
+def _options_table(study: Study) -> str:
+    columns = [
+        Column("option"),
+        Column("extra\npower", "MWh/a", 0),
+        Column("per heat\ndesign point", "MWh/MWh", 5),
+        Column("per heat\nyear", "MWh/MWh", 5),
+        Column("capital", "", 0),
+        Column("first year's\ngain", "", 0),
+        Column("NPV", "", 0),
+        Column("IRR", "%", 1),
+        Column("payback", "years", 1),
+    ]
+    return table(columns, [_option_row(study, i) for i in range(len(study.balances))])
+
+
+def _option_row(study: Study, index: int) -> list[Cell]:
+    figures, told = study.year_figures[study.reference][index], study.measures[study.reference][index]
+    return [
+        study.balances[index].key,
+        figures.extra_power_MWh,
+        study.balances[index].extra_power_per_heat,
+        figures.extra_power_per_heat,
+        float(study.capital[index].total) / 1e3,
+        figures.first_year_gain / 1e3,
+        told.npv / 1e3,
+        percent(told.irr),
+        told.simple_payback_years,
+    ]
+
+
+def _scenario_table(study: Study) -> str:
+    columns = [Column("scenario"), *(Column(balance.key, "", 0) for balance in study.balances)]
+    rows: list[list[Cell]] = []
+    for name, npv, best in zip(
+        study.case.scenarios, study.comparison.npv, study.comparison.best, strict=True
+    ):
+        rows.append([name, *(f"{v / 1e3:,.0f}{' *' if i == best else '  '}" for i, v in enumerate(npv))])
+    return table(columns, rows)
+
+
+def _closing(study: Study) -> str:
+    failed = [check for check in study.checks if not check.passed]
+    plural = "" if len(failed) == 1 else "s"
+    verdict = f"{len(study.checks)} checks, {len(failed)} finding{plural}{':' if failed else '.'}"
+    return "\n".join([verdict, *(_finding(check) for check in failed), "", _CAUTION])
+
+
+def _finding(check: Check) -> str:
+    """What failed, by how much where that can be said, and why it matters; folded to the width of a page."""
+    measured = check.value is not None and check.limit is not None
+    by = f" {check.value:.4g}, limit {check.limit:.4g};" if measured else ""
+    text = f"{check.name}:{by} {check.message}"
+    return fill(text, WIDTH, initial_indent="  ", subsequent_indent="    ")
+
+
+_CAUTION = (
+    "Pre-feasibility only and no investment advice: blading, pressure parts, permits and grid\n"
+    "connection need the makers, the local codes and licensed engineers."
+)

@@ -1,0 +1,143 @@
+"""The whole study of a case, composed: heat balances, year, capital, money, sensitivity, checks."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from appraise.capex import OptionCapital, capital
+from appraise.case.hours import Hours
+from appraise.case.load import Case, LoadedCase
+from appraise.cash_flow import CashFlow
+from appraise.chain import Physics, Progress, ScenarioRun, physics_key, run_scenario, solve_physics
+from appraise.checks import Check, checks
+from appraise.cycle.balance import Balance, design_balances
+from appraise.cycle.balance import point_balances as balances_at
+from appraise.cycle.design import design
+from appraise.cycle.limits import steam_problems
+from appraise.errors import CaseError
+from appraise.measures import Measures, measures
+from appraise.numerics import Array
+from appraise.sensitivity import Tornado, tornado
+from appraise.trade import YearFigures, year_figures
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Comparison:
+    """Options against each other in every scenario; the baseline, worth 0, competes.
+
+    npv, regret : [scenario, option]; worst, largest_regret : [option]; best : option by scenario, as index.
+    """
+
+    npv: Array
+    regret: Array
+    worst: Array
+    largest_regret: Array
+    best: tuple[int, ...]
+
+    @classmethod
+    def of(cls, npv: Array) -> Comparison:
+        """Compare; `npv` is [scenario, option]. Of equal options the first in the case counts as best."""
+        regret = npv.max(axis=1, keepdims=True) - npv
+        best = tuple(int(i) for i in np.argmax(npv, axis=1))
+        return cls(npv, regret, npv.min(axis=0), regret.max(axis=0), best)
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Study:
+    """All results of a case. Tuples follow the case's order of options and of scenarios."""
+
+    loaded: LoadedCase
+    physics: Physics
+    balances: tuple[Balance, ...]
+    capital: tuple[OptionCapital, ...]
+    runs: tuple[ScenarioRun, ...]
+    measures: tuple[tuple[Measures, ...], ...]  # [scenario][option]
+    year_figures: tuple[tuple[YearFigures, ...], ...]  # [scenario][option]
+    comparison: Comparison
+    tornado: tuple[Tornado, ...]
+    checks: tuple[Check, ...]
+
+    @property
+    def case(self) -> Case:
+        """The case as validated."""
+        return self.loaded.case
+
+    @property
+    def hours(self) -> Hours:
+        """The series as read."""
+        return self.loaded.hours
+
+    @property
+    def reference(self) -> int:
+        """Index of the reference scenario."""
+        return list(self.case.scenarios).index(self.case.study.reference_scenario)
+
+
+def balances(case: Case) -> tuple[Balance, ...]:
+    """Heat balance of every option at the design point. Raises CaseError."""
+    _refuse_wet(case)
+    return design_balances(case, design(case))
+
+
+def point_balances(case: Case, heat_MW: float, supply_C: float, return_C: float) -> tuple[Balance, ...]:
+    """Heat balance of every option at another point, with the sizes of the design point. Raises CaseError."""
+    _refuse_wet(case)
+    return balances_at(case, design(case), heat_MW, supply_C, return_C)
+
+
+def _refuse_wet(case: Case) -> None:
+    problems = steam_problems(case, None)
+    if problems:
+        raise CaseError(problems)
+
+
+def run_study(loaded: LoadedCase, progress: Progress = lambda fraction, label: None) -> Study:
+    """Solve everything the case asks for. `progress` hears a fraction from 0 to 1 and what is being done."""
+    case, hours = loaded.case, loaded.hours
+    progress(0.0, "design point and year")
+    physics = solve_physics(case, hours)
+    bought = capital(case, physics.sizes)
+    runs = tuple(run_scenario(case, hours, physics, bought, name) for name in case.scenarios)
+    comparison = Comparison.of(np.stack([run.npv for run in runs]))
+    progress(0.15, "measures")
+    figures = tuple(tuple(_figures(case, physics, run, i) for i in range(len(case.options))) for run in runs)
+    told = tuple(tuple(measures(flow) for flow in run.flows) for run in runs)
+    reference = list(case.scenarios).index(case.study.reference_scenario)
+    bars = tornado(
+        case,
+        loaded.data,
+        hours,
+        physics,
+        comparison.npv[reference],
+        lambda fraction, label: progress(0.2 + 0.65 * fraction, label),
+    )
+    progress(0.85, "checks")
+    return Study(
+        loaded=loaded,
+        physics=physics,
+        balances=design_balances(case, physics.design),
+        capital=bought,
+        runs=runs,
+        measures=told,
+        year_figures=figures,
+        comparison=comparison,
+        tornado=bars,
+        checks=checks(case, hours, physics, bought, runs),
+    )
+
+
+def _figures(case: Case, physics: Physics, run: ScenarioRun, index: int) -> YearFigures:
+    flow = run.flows[index]
+    return year_figures(
+        case, physics.years, index, run.traded[index], run.prices, run.shape, first_year_gain(case, flow)
+    )
+
+
+def first_year_gain(case: Case, flow: CashFlow) -> float:
+    """Sum of the operating lines in the first operating year, before tax, on the basis of the analysis."""
+    return float(flow.lines.operating()[len(case.capex.spend)])
+
+
+__all__ = ["Comparison", "Study", "balances", "first_year_gain", "physics_key", "point_balances", "run_study"]
