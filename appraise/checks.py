@@ -229,5 +229,5 @@ def _calibration(physics: Physics) -> Iterator[Check]:
             "live steam of the steady test",
             abs(found.live_steam_kg_s / found.measured_live_steam_kg_s - 1.0),
             METER_LIMIT,
-            f"the model needs {found.live_steam_kg_s:.3f} kg/s, {found.measured_live_steam_kg_s:.3f} measured",
+            f"model {found.live_steam_kg_s:.3f} kg/s, measured {found.measured_live_steam_kg_s:.3f} kg/s",
         )

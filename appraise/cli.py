@@ -197,7 +197,7 @@ def run(
     if loaded.doubts and not quiet:
         click.echo(output.problem_list(loaded.doubts, "doubt"), err=True)
     from appraise.study import run_study
-    from appraise.workbook.write import workbook_bytes
+    from appraise.workbook.book import workbook_bytes
 
     with _progress(shown=not quiet) as progress:
         study = run_study(loaded, progress=progress)

@@ -67,7 +67,7 @@ class Fit:
     def __call__(self, x: Array) -> Array:
         unit = (2.0 * x.ravel() - (self.low + self.high)) / (self.high - self.low)
         values = self.coefficients @ chebyshev_basis(unit, self.coefficients.shape[1])
-        return np.asarray(values.reshape(-1, *x.shape))
+        return np.asarray(values.reshape(self.coefficients.shape[0], *x.shape))
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -96,7 +96,7 @@ def _comparison_row(b: Balance) -> list[Cell]:
         b.bleed_kg_s,
         b.extra_power_per_heat,
         percent(b.ideal_gain_share),
-        f"{b.closure:.0e}",
+        "< 1e-12" if b.closure < 1e-12 else f"{b.closure:.0e}",  # below that it is noise of the machine
     ]
 
 

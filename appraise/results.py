@@ -29,6 +29,7 @@ def study_json(study: Study) -> dict[str, Any]:
         ],
         "scenarios": _scenarios(study),
         "tornado": plain(study.tornado, "tornado"),
+        "gain_moves": plain(study.moves, "gain_moves"),
         "checks": plain(study.checks, "checks"),
     }
 

@@ -14,6 +14,7 @@ from functools import cache
 import numpy as np
 from numpy.typing import NDArray
 
+from appraise.errors import SolveError
 from appraise.numerics import Array, Fit, Fit2
 from appraise.steam import (
     enthalpy_pt,
@@ -164,7 +165,7 @@ def enthalpy_ps(at: Saturation, entropy_kJ_kgK: Array) -> Array:
             s[dry],
         )
 
-    return _wet_or_superheated(wet, at.hg, superheated, np.asarray(s > at.sg))
+    return _wet_or_superheated(wet, at.hg, superheated, ~(s <= at.sg))
 
 
 def entropy_ph(at: Saturation, enthalpy_kJ_kg: Array) -> Array:
@@ -182,14 +183,14 @@ def entropy_ph(at: Saturation, enthalpy_kJ_kg: Array) -> Array:
             h[dry],
         )
 
-    return _wet_or_superheated(wet, at.sg, superheated, np.asarray(h > at.hg))
+    return _wet_or_superheated(wet, at.sg, superheated, ~(h <= at.hg))
 
 
 def volume_ph(at: Saturation, enthalpy_kJ_kg: Array) -> Array:
     """Specific volume of the wet mixture or of superheated steam, m3/kg."""
     h = np.broadcast_to(enthalpy_kJ_kg, at.hf.shape)
     wet = at.vf + (h - at.hf) / (at.hg - at.hf) * (at.vg - at.vf)
-    dry = np.asarray(h > at.hg)
+    dry = np.asarray(~(h <= at.hg))  # not "h > hg": a missing value must reach the library, which is loud
     if not dry.any():
         return wet
     p, excess = at.pressure_bar[dry], h[dry] - at.hg[dry]
@@ -235,7 +236,8 @@ def _liquid(which: int, pressure_bar: Array, temperature_C: Array) -> Array:
     direct = (enthalpy_pt, volume_pt)[which]
     result = np.empty(t.shape)
     result[inside] = fit(t[inside], excess[inside])
-    result[~inside] = direct(p[~inside], t[~inside])
+    # A hair above saturation, as in the fit.
+    result[~inside] = direct(np.where(excess == 0.0, p * (1 + 1e-9), p)[~inside], t[~inside])
     return result
 
 
@@ -251,7 +253,10 @@ def liquid_volume(pressure_bar: Array, temperature_C: Array) -> Array:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class NetworkWater:
-    """District-heating water at one pressure: h(T), v(T) and T(h), from 1 °C to just below boiling."""
+    """District-heating water at one pressure: h(T), v(T) and T(h), from 0 °C to just below boiling.
+
+    Raises SolveError outside that range.
+    """
 
     pressure_bar: float
     _forward: Fit
@@ -264,20 +269,29 @@ class NetworkWater:
 
     def enthalpy(self, temperature_C: Array) -> Array:
         """h(T), kJ/kg."""
-        return np.asarray(self._forward(temperature_C)[0])
+        return np.asarray(self._water(self._forward, temperature_C, "temperature, °C")[0])
 
     def volume(self, temperature_C: Array) -> Array:
         """v(T), m3/kg."""
-        return np.asarray(self._forward(temperature_C)[1])
+        return np.asarray(self._water(self._forward, temperature_C, "temperature, °C")[1])
 
     def temperature(self, enthalpy_kJ_kg: Array) -> Array:
         """T(h), °C."""
-        return np.asarray(self._inverse(enthalpy_kJ_kg)[0])
+        return np.asarray(self._water(self._inverse, enthalpy_kJ_kg, "enthalpy, kJ/kg")[0])
+
+    def _water(self, fit: Fit, x: Array, name: str) -> Array:
+        if not fit.covers(x):
+            wrong = np.ravel(x)[~((np.ravel(x) >= fit.low) & (np.ravel(x) <= fit.high))][0]
+            raise SolveError(
+                f"network water at {self.pressure_bar:g} bar: {name} {wrong:g} is not between "
+                f"{fit.low:.1f} and {fit.high:.1f}"
+            )
+        return fit(x)
 
 
 @cache
 def _network_water(pressure_bar: float) -> NetworkWater:
-    low, high = 1.0, float(saturation_temperature_p(pressure_bar)) - 0.1
+    low, high = 0.0, float(saturation_temperature_p(pressure_bar)) - 0.1
     forward = Fit.of(
         lambda t: np.stack([enthalpy_pt(pressure_bar, t), volume_pt(pressure_bar, t)]), low, high, 24
     )

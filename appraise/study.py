@@ -10,14 +10,15 @@ from appraise.capex import OptionCapital, capital
 from appraise.case.hours import Hours
 from appraise.case.load import Case, LoadedCase
 from appraise.cash_flow import CashFlow
-from appraise.chain import Physics, Progress, ScenarioRun, physics_key, run_scenario, solve_physics
+from appraise.chain import Physics, Progress, ScenarioRun, run_scenario, solve_physics
 from appraise.checks import Check, checks
 from appraise.cycle.balance import Balance, design_balances
 from appraise.cycle.balance import point_balances as balances_at
 from appraise.cycle.design import design
-from appraise.cycle.limits import steam_problems
+from appraise.cycle.limits import boiling_problems, steam_problems
 from appraise.errors import CaseError
 from appraise.measures import Measures, measures
+from appraise.moves import Move, gain_moves
 from appraise.numerics import Array
 from appraise.sensitivity import Tornado, tornado
 from appraise.trade import YearFigures, year_figures
@@ -57,6 +58,7 @@ class Study:
     year_figures: tuple[tuple[YearFigures, ...], ...]  # [scenario][option]
     comparison: Comparison
     tornado: tuple[Tornado, ...]
+    moves: tuple[Move, ...]
     checks: tuple[Check, ...]
 
     @property
@@ -84,6 +86,9 @@ def balances(case: Case) -> tuple[Balance, ...]:
 def point_balances(case: Case, heat_MW: float, supply_C: float, return_C: float) -> tuple[Balance, ...]:
     """Heat balance of every option at another point, with the sizes of the design point. Raises CaseError."""
     _refuse_wet(case)
+    too_hot = tuple(boiling_problems(case, "supply of the operating point", supply_C))
+    if too_hot:
+        raise CaseError(too_hot)
     return balances_at(case, design(case), heat_MW, supply_C, return_C)
 
 
@@ -113,7 +118,9 @@ def run_study(loaded: LoadedCase, progress: Progress = lambda fraction, label: N
         comparison.npv[reference],
         lambda fraction, label: progress(0.2 + 0.65 * fraction, label),
     )
-    progress(0.85, "checks")
+    progress(0.85, "what moves the gain")
+    moves = gain_moves(case, loaded.data, hours, physics)
+    progress(0.95, "checks")
     return Study(
         loaded=loaded,
         physics=physics,
@@ -124,6 +131,7 @@ def run_study(loaded: LoadedCase, progress: Progress = lambda fraction, label: N
         year_figures=figures,
         comparison=comparison,
         tornado=bars,
+        moves=moves,
         checks=checks(case, hours, physics, bought, runs),
     )
 
@@ -138,6 +146,3 @@ def _figures(case: Case, physics: Physics, run: ScenarioRun, index: int) -> Year
 def first_year_gain(case: Case, flow: CashFlow) -> float:
     """Sum of the operating lines in the first operating year, before tax, on the basis of the analysis."""
     return float(flow.lines.operating()[len(case.capex.spend)])
-
-
-__all__ = ["Comparison", "Study", "balances", "first_year_gain", "physics_key", "point_balances", "run_study"]

@@ -1,7 +1,7 @@
 """Published values as data: what was printed, where, and how far a calculation may lie from it.
 
 A file holds tables; a table has rows of given quantities and results. Results are written as text, so that
-the tolerance is half a unit of the last digit printed, unless the table states a `relative` one and `because`.
+the tolerance is half a unit of the last digit printed, unless the table states a `relative` one, `because`.
 Status: "seen" read at a place that carries it, "recomputed" calculated again with an independent program,
 "memory" recalled and not read again, "own" an own calculation without publication behind it.
 """

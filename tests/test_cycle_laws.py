@@ -82,6 +82,10 @@ def closures(made: Design, option: OptionDesign) -> list[float]:
 @STEADY
 @given(plants())
 def test_every_part_closes_at_the_design_point(data) -> None:
+    """With four stages too, where a drain passes more than one shell."""
+    for route in ("cascade", "pumped"):
+        own = {"key": f"four-{route}", "name": "Four stages", "stages": 4, "drain_route": route}
+        data["options"].append({**own, "drain": "subcooled"})
     made = design_or_skip(data)
     for option in made.options:
         assert np.abs(closures(made, option)).max() < 1e-9

@@ -167,7 +167,7 @@ def test_saturated_liquid_beyond_the_fit_is_no_vapour(p_bar: float) -> None:
 @pytest.mark.parametrize("p_bar", [2.0, 6.0, 10.0, 16.0, 25.0])
 def test_network_water(p_bar: float) -> None:
     water = fits.NetworkWater.at(p_bar)
-    t = np.linspace(1.0, float(steam.saturation_temperature_p(p_bar)) - 0.1, 1001)
+    t = np.linspace(0.0, float(steam.saturation_temperature_p(p_bar)) - 0.1, 1001)
     h = water.enthalpy(t)
     assert np.abs(h - steam.enthalpy_pt(p_bar, t)).max() < 2e-10
     assert np.abs(water.volume(t) / steam.volume_pt(p_bar, t) - 1.0).max() < 1e-12
@@ -177,7 +177,7 @@ def test_network_water(p_bar: float) -> None:
 # --- manners ----------------------------------------------------------------------------------------------
 
 
-@pytest.mark.parametrize("temperature_C", [-10.0, 0.5, 180.0, 250.0, np.nan])
+@pytest.mark.parametrize("temperature_C", [-10.0, -0.5, 180.0, 250.0, np.nan])
 def test_network_water_does_not_extrapolate(temperature_C: float) -> None:
     """Boiling at 10 bar is 179.9 °C: hotter water, ice and a missing value are no network water."""
     water = fits.NetworkWater.at(10.0)

@@ -2,7 +2,7 @@
 
 No published figure for this gain is known. The figures are an own calculation with IAPWS-IF97 on a plant
 stripped of everything else; they hold where each condenser's drain leaves by itself (`pumped`), its surplus
-not used in the colder shell. Cascaded drains are compared with another own calculation, the optimum of the split.
+not used in the colder shell. Cascaded drains are compared with another own calculation, of the best split.
 """
 
 from dataclasses import dataclass, replace

@@ -111,7 +111,7 @@ def point_balances(
 ) -> tuple[Balance, ...]:
     """Heat balance of every option at another point, sizes as at the design point. Limits only warn."""
     at = Conditions(np.array([heat_MW]), np.array([return_C]), np.array([supply_C]))
-    points = [_solve_point(made, o, at) for o in made.options]
+    points = [_Point(o, option_at(made, o, at)) for o in made.options]
     base = next(p for p in points if p.option.train.key == made.baseline.train.key)
     if not base.solution.valid[0]:
         raise SolveError("the baseline has no steady operation at this point")
@@ -122,9 +122,10 @@ def point_balances(
     )
 
 
-def _solve_point(made: Design, option: OptionDesign, at: Conditions) -> _Point:
-    task = Task(made.plant, option.train, option.sizes, made.reference, at, np.zeros(1, dtype=bool))
-    return _Point(option, solve(task))
+def option_at(made: Design, option: OptionDesign, at: Conditions) -> Solution:
+    """One option at other conditions, with the sizes of its design point."""
+    none = np.zeros(at.heat_MW.size, dtype=bool)
+    return solve(Task(made.plant, option.train, option.sizes, made.reference, at, none))
 
 
 def _balance(case: Case, made: Design, at: _Point, base: _Point, ideal_share: float | None) -> Balance:

@@ -32,17 +32,31 @@ def _wet_live_steam(case: Case) -> Iterator[Problem]:
 
 
 def _boiling_water(case: Case, hours: Hours | None) -> Iterator[Problem]:
+    yield from boiling_problems(case, "plant.design.supply_C", case.plant.design.supply_C)
+    if case.plant.measured is not None:
+        yield from boiling_problems(case, "plant.measured.supply_C", case.plant.measured.supply_C)
+    if hours is not None:
+        yield from boiling_problems(case, *_hottest_hour(case, hours))
+
+
+def _hottest_hour(case: Case, hours: Hours) -> tuple[str, float]:
+    """Where the hottest supply of all operating years stands, and how hot it is, °C."""
+    year, curve = case.year, case.network.heating_curve
+    added = year.supply_offset_K + max(0.0, year.supply_change_K_per_year * (case.study.years - 1))
+    if hours.supply_C is not None:
+        row = int(np.argmax(hours.supply_C))
+        return f"{year.series} row {row + 2}, column supply_C", float(hours.supply_C[row]) + added
+    assert curve is not None
+    return "network.heating_curve.supply_C", max(curve.supply_C) + added
+
+
+def boiling_problems(case: Case, where: str, supply_C: float) -> Iterator[Problem]:
+    """A supply temperature that comes too near to boiling at network pressure."""
     pressure = case.network.pressure_bar
     greatest = float(saturation_temperature_p(pressure)) - _BOILING_MARGIN_K
-    supplies = {"plant.design.supply_C": case.plant.design.supply_C}
-    if hours is not None and hours.supply_C is not None:
-        offset = case.year.supply_offset_K
-        row = int(np.argmax(hours.supply_C))
-        supplies[f"{case.year.series} row {row + 2}, column supply_C"] = float(hours.supply_C[row]) + offset
-    for where, supply in supplies.items():
-        if supply > greatest:
-            yield Problem(
-                where,
-                f"{supply:g} °C; must stay at or below {greatest:.1f} °C, {_BOILING_MARGIN_K:g} K under "
-                f"boiling at the network's {pressure:g} bar",
-            )
+    if supply_C > greatest:
+        yield Problem(
+            where,
+            f"{supply_C:g} °C; must stay at or below {greatest:.1f} °C, {_BOILING_MARGIN_K:g} K under "
+            f"boiling at the network's {pressure:g} bar",
+        )

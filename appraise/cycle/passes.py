@@ -74,9 +74,10 @@ def network_water(task: Task, layout: Layout, state: Array) -> Water:
     flow = heat * 1e3 / (ends[1] - ends[0]) if at.network_kg_s is None else at.network_kg_s
     inlet, outlet = at.return_C, at.supply_C
     if task.with_flue_gas:
-        inlet = network.temperature(ends[0] + gas * 1e3 / flow)
+        inlet = network.temperature(np.minimum(ends[0] + gas * 1e3 / flow, ends[1]))
     if at.network_kg_s is not None:
-        outlet = network.temperature(ends[0] + heat * 1e3 / flow)
+        # On its way the iteration may ask for more than the supply; at rest it does not.
+        outlet = network.temperature(np.minimum(ends[0] + heat * 1e3 / flow, ends[1]))
     slides = task.sections > 0 and not task.held
     reached = shares_reached(state[layout.shares]) if slides else design_shares(task.train)
     inner = inlet + reached * (outlet - inlet)

@@ -145,7 +145,9 @@ def solve_shells(
         cooled_zone = (
             water_C[i]
             if stage.drain_approach_K is None
-            else plant.network.temperature(water_h[i] + subcooling / network_kg_s)
+            else plant.network.temperature(
+                np.clip(water_h[i] + subcooling / network_kg_s, *water_h[i : i + 2])
+            )
         )
         values = (
             cooled_zone,

@@ -27,6 +27,7 @@ CAUTION = "7A4B00"
 CAUTION_FILL = "FCEBCB"
 
 GENERAL = "General"
+TEXT_FORMAT = "@"
 
 NUMBER_FORMATS: Mapping[str, str] = {
     "general": GENERAL,
@@ -125,9 +126,12 @@ _FIXED: Mapping[str, Look] = {
 
 def _variants(kind: str, look: Look) -> dict[str, Look]:
     """The look under every variant of its kind."""
+    # Typed over, "07-06" or "-20%" would become a date or a number, were the cell not told to hold text.
+    typed = TEXT_FORMAT if kind in _TEXTS else look.number_format
+    frame = replace(look, fill=INPUT_FILL, frame="dotted", border_colour=ACCENT, unlocked=True)
     return {
         kind: look,
-        f"{kind} input": replace(look, fill=INPUT_FILL, frame="dotted", border_colour=ACCENT, unlocked=True),
+        f"{kind} input": replace(frame, number_format=typed),
         f"{kind} as run": replace(look, italic=True, colour=GREY),
         f"{kind} as run total": replace(
             look, italic=True, bold=True, colour=GREY, top="thin", border_colour=SLATE
