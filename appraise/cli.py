@@ -26,6 +26,10 @@ Progress = Callable[[float, str], None]
 
 STANDARD_OUTPUT = Path("-")
 
+# The matrices here are so small that threads of the linear algebra library only wait for one another: on a
+# busy machine they take four times as long. It reads this when numpy is imported, which comes later.
+os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
+
 
 class Point(NamedTuple):
     """An operating point of the turbine condensers."""

@@ -6,9 +6,10 @@ import json
 import math
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from dataclasses import fields, is_dataclass
+from textwrap import fill
 from typing import TYPE_CHECKING, Any
 
-from appraise.tables import Cell, Column, heading, table
+from appraise.tables import WIDTH, Cell, Column, heading, table
 
 if TYPE_CHECKING:
     from appraise.case.load import LoadedCase
@@ -187,6 +188,9 @@ def check_report(loaded: LoadedCase) -> str:
         ("capital", [item.key for item in case.capex.items]),
         ("drivers", [str(len(case.drivers))]),
     ]
-    lines = [f"{name:<11}{', '.join(values) or 'none'}" for name, values in facts]
+    lines = [
+        fill(f"{name:<11}{', '.join(values) or 'none'}", WIDTH, subsequent_indent=" " * 11)
+        for name, values in facts
+    ]
     doubts = problem_list(loaded.doubts, "doubt") if loaded.doubts else "Nothing in it is doubtful."
     return "\n".join([heading(f"{loaded.path.name}: {case.study.title}"), "", *lines, "", doubts])

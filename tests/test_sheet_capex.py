@@ -118,7 +118,7 @@ def test_money_of_the_price_year_needs_no_table(index, item, tmp_path) -> None:
     sheets = sheets_of(money)
     found = recalculated(sheets, tmp_path)
     assert differences(sheets, found) == []
-    assert value_of(sheets, found, "capital_total_two") == 1e5
+    assert value_of(sheets, found, "capital_total__two") == 1e5
 
 
 def test_a_case_without_items_has_its_names_and_no_chart() -> None:
@@ -126,7 +126,7 @@ def test_a_case_without_items_has_its_names_and_no_chart() -> None:
     case = old.model_copy(update={"capex": type(old.capex)()})
     sheet = capex_sheet(Money(case, capital(case, SIZES)))  # type: ignore[arg-type]
     named = {cell.name: cell.value for cell in sheet.cells.values() if cell.name}
-    assert named["capital_total_two"] == named["capital_increment_two"] == 0.0
+    assert named["capital_total__two"] == named["capital_increment__two"] == 0.0
     assert sheet.charts == ()
 
 

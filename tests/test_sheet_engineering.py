@@ -456,7 +456,7 @@ def test_tie_in_energies_are_named() -> None:
         lost = run.traded[0].tie_in
         for kind in ("power", "weighted_power", "premium", "fuel", "peak_fuel"):
             assert named(sheet, name_of("tie", kind, scenario)) == [getattr(lost, f"{kind}_MWh")]
-    assert named(sheet, "tie_power_central") != [0.0]
+    assert named(sheet, "tie__power__central") != [0.0]
 
 
 @pytest.mark.parametrize("study", [marrowby_study, three_stage_study])

@@ -93,6 +93,21 @@ def _keys(found: Found) -> Faults:
                 yield where, f"{shown(key)} given again; allowed: a key of its own"
 
 
+def _lookalikes(found: Found) -> Faults:
+    """Names that a workbook could not tell apart: its names know letters, digits and single underscores."""
+    for way in (("options",), ("capex", "items"), ("scenarios",)):
+        names = list(dict.fromkeys(found.keys(*way)))
+        seen: dict[str, str] = {}
+        for name in names:
+            first = seen.setdefault(re.sub(r"[^a-z0-9]+", "_", name.lower()).strip("_"), name)
+            if first != name:
+                allowed = "names that differ in letters or digits"
+                yield (
+                    f"{'.'.join(way)}.{name}",
+                    f"{shown(name)} given beside {shown(first)}; allowed: {allowed}",
+                )
+
+
 def _baseline(found: Found) -> Faults:
     if not isinstance(found.table("options"), list | tuple):
         return
@@ -105,8 +120,8 @@ def _baseline(found: Found) -> Faults:
 def _scenarios(found: Found) -> Faults:
     names = found.keys("scenarios")
     for name in names:
-        if not re.fullmatch(r"[\w-]+", name):
-            yield "scenarios", f"name {shown(name)} given; allowed: letters, digits, _ and -"
+        if not re.fullmatch(r"[A-Za-z0-9_-]+", name):
+            yield "scenarios", f"name {shown(name)} given; allowed: letters from A to Z, digits, _ and -"
         column = found.table("scenarios", name, "price_column")
         if column in ("time", *RANGES) and column != "power_price":
             yield f"scenarios.{name}.price_column", f"{shown(column)} given; allowed: a column of prices"
@@ -240,6 +255,7 @@ def hours_contradictions(case: Case, hours: Hours) -> list[Problem]:
 _CHECKS: tuple[Callable[[Found], Faults], ...] = (
     _pressures,
     _keys,
+    _lookalikes,
     _baseline,
     _scenarios,
     _capital,

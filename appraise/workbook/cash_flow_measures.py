@@ -206,7 +206,7 @@ class MeasuresTable:
                     f"Break-even {label} price in the first year, whole path scaled",
                     f"{self.currency}/{unit}",
                     "number2",
-                    f'=IF({line}=0,"{NOTHING}",INDEX(chosen_{kind},1,spend_years+1)*(1-{npv}/({TAX_LEFT}*{line})))',
+                    f'=IF({line}=0,"{NOTHING}",INDEX(chosen__{kind},1,spend_years+1)*(1-{npv}/({TAX_LEFT}*{line})))',
                     NOTHING if value is None else value,
                 )
             )

@@ -241,7 +241,7 @@ class _Decision:
                 lambda i, value=value: _or(getattr(told[i], value), NOTHING),  # type: ignore[misc]
                 "–",
             )
-            formula = f"=INDEX(chosen_{kind},1,spend_years+1)"
+            formula = f"=INDEX(chosen__{kind},1,spend_years+1)"
             self.page.formula(row, self.last + 1, formula, float(planned[0]), "number1")
         self._live(
             "largest_capital", "Capital", money, "money", lambda i: _or(told[i].largest_capex, NOTHING), "–"

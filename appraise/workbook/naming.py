@@ -12,13 +12,18 @@ CHOSEN_SCENARIO = "chosen_scenario"
 
 
 def name_of(*parts: str) -> str:
-    """Defined name from words and keys: ("npv", "two-stage") is "npv_two_stage"."""
-    return "_".join(re.sub(r"[^A-Za-z0-9]+", "_", part).strip("_") for part in parts)
+    """Defined name from words and keys: ("npv", "two-stage") is "npv__two_stage"."""
+    return "__".join(plain(part) for part in parts)
+
+
+def plain(part: str) -> str:
+    """A word or key as it may stand in a name: no two underscores in a row, none at the ends."""
+    return re.sub(r"[^A-Za-z0-9]+", "_", part).strip("_")
 
 
 def input_name(path: str) -> str:
     """Name of the cell of an input: "finance.tax_rate" is "in_finance_tax_rate"."""
-    return name_of("in", path)
+    return f"in_{plain(path)}"
 
 
 @dataclass(frozen=True, slots=True)

@@ -119,12 +119,12 @@ def _floored(case: Case, driver: Driver) -> bool:
 def _support_bar(case: Case, key: str, driver: Driver) -> LiveBar:
     """Premium and fee of the chosen scenario: so much per MWh."""
     if driver.path == "scenario.power_premium.value":
-        years = "(operating_year<=chosen_premium_years)*value_weight"
-        worth = f"{TAX_LEFT}*({_energy(case, key, 'premium', years)}*(chosen_premium_years>=1))"
-        return LiveBar("level", worth, "chosen_premium_value")
+        years = "(operating_year<=chosen_premium__years)*value_weight"
+        worth = f"{TAX_LEFT}*({_energy(case, key, 'premium', years)}*(chosen_premium__years>=1))"
+        return LiveBar("level", worth, "chosen_premium__value")
     if driver.path == "scenario.network_fee":
         return LiveBar(
-            "level", f"-{TAX_LEFT}*({_energy(case, key, 'power')})", "INDEX(chosen_fee,1,spend_years+1)"
+            "level", f"-{TAX_LEFT}*({_energy(case, key, 'power')})", "INDEX(chosen__fee,1,spend_years+1)"
         )
     return AS_RUN
 
