@@ -19,8 +19,10 @@ from appraise.cycle.balance import option_at
 from appraise.cycle.design import Design
 from appraise.cycle.task import Conditions
 from appraise.numerics import Array
+from appraise.workers import each
 
 Data = Mapping[str, Any]
+Change = tuple[str, Data, Callable[[Conditions], Conditions]]
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -36,16 +38,17 @@ def gain_moves(case: Case, data: Data, hours: Hours, physics: Physics) -> tuple[
     """Every move. `data` is the case as read, in which paths are changed."""
     start = _design_gain(physics.design, physics.design.conditions), _year_gain(physics)
 
-    def move(label: str, edited: Case, point: Callable[[Conditions], Conditions]) -> Move:
+    def move(change: Change) -> Move:
+        label, edited, point = change[0], case_from(change[1]), change[2]
         moved = solve_physics(edited, hours, physics)
         made = physics.design if edited.year != case.year else moved.design
         at_design = _design_gain(made, point(made.conditions)) - start[0]
         return Move(label, at_design * 1e3, _year_gain(moved) - start[1])
 
-    return tuple(move(label, case_from(edited), point) for label, edited, point in _changes(case, data))
+    return tuple(each(move, list(_changes(case, data))))
 
 
-def _changes(case: Case, data: Data) -> Iterator[tuple[str, Data, Callable[[Conditions], Conditions]]]:
+def _changes(case: Case, data: Data) -> Iterator[Change]:
     """Label, edited data, and the design point under the change."""
 
     def added(path: str, by: float) -> Data:

@@ -17,6 +17,7 @@ from appraise.case.paths import changed
 from appraise.chain import Physics, Progress, case_npv, physics_key
 from appraise.errors import AppraiseError
 from appraise.numerics import Array
+from appraise.workers import each
 
 Change = float | int | str
 
@@ -72,11 +73,15 @@ def tornado(
     base_npv : of every option of the unchanged case.
     """
     drivers = [driver for driver in case.drivers if driver.low is not None and driver.high is not None]
-    ends: list[tuple[Driver, _End, _End]] = []
-    for number, driver in enumerate(drivers):
-        progress(number / len(drivers), driver.label)
+
+    def both(driver: Driver) -> tuple[_End, _End]:
         low, high = (_end(case, data, hours, physics, driver.path, c) for c in (driver.low, driver.high))
+        return low, high
+
+    ends: list[tuple[Driver, _End, _End]] = []
+    for driver, (low, high) in zip(drivers, each(both, drivers), strict=True):
         ends.append((driver, low, high))
+        progress(len(ends) / len(drivers), driver.label)
     return tuple(
         Tornado(
             option.key,
