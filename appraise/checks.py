@@ -9,11 +9,14 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
+import numpy_financial as npf
 
 from appraise.capex import OptionCapital
 from appraise.case.hours import Hours
 from appraise.case.load import Case
+from appraise.cash_flow import CashFlow
 from appraise.chain import Physics, ScenarioRun
+from appraise.measures import internal_rate
 from appraise.year import OptionYear
 
 CLOSURE_LIMIT = 1e-9
@@ -86,6 +89,25 @@ def _money(runs: tuple[ScenarioRun, ...]) -> Iterator[Check]:
         1e-12,
         "every option, scenario and year, relative to the largest flow",
     )
+    second = [float(npf.npv(flow.case.finance.discount_rate, flow.net)) for flow in flows]
+    apart = max(abs(float(flow.npv) - other) for flow, other in zip(flows, second, strict=True)) / scale
+    yield _limited(
+        "net present value, computed a second time",
+        apart,
+        1e-12,
+        "by an independent library, every option and scenario, relative to the largest flow",
+    )
+    yield _limited(
+        "value left at the internal rate of return",
+        max(_left_at_irr(flow) for flow in flows) / scale,
+        1e-9,
+        "by an independent library, every option and scenario, relative to the largest flow",
+    )
+
+
+def _left_at_irr(flow: CashFlow) -> float:
+    rate = internal_rate(flow.net).value
+    return 0.0 if rate is None else abs(float(npf.npv(rate, flow.net)))
 
 
 def _when(hours: Hours, index: int) -> str:

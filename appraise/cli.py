@@ -180,17 +180,19 @@ def run(
     """The whole study of CASE, as a workbook.
 
     Heat balances, the year by the hour, capital, cash flows in every price scenario, and what they are
-    sensitive to. Files are written at the end, whole or not at all.
+    sensitive to. Files are written at the end, whole or not at all. CASE may also be a workbook that this
+    command wrote: its inputs are read as they stand now, and the study is run again.
 
     \b
     Example:
       appraise run marrowby/marrowby.toml
       appraise run marrowby/marrowby.toml --out case.xlsx --json results.json
+      appraise run case.xlsx
     """
     for name, given in (("--draws", draws), ("--verify", verify)):
         if given:
             raise click.UsageError(f"{name}: not available yet")
-    out = out or Path("reports", f"{case_path.stem}.xlsx")
+    out = out or _default_out(case_path)
     if out.suffix.lower() != ".xlsx":
         raise click.UsageError(f"--out: '{out}' does not end in .xlsx")
     from appraise import output, results
@@ -232,6 +234,12 @@ def _check_key(loaded: LoadedCase, key: str | None) -> None:
         raise click.UsageError(f"--option: the case has no option '{key}'; it has {', '.join(keys)}")
 
 
+def _default_out(case_path: Path) -> Path:
+    """The workbook of a case; a workbook that is itself the case is kept."""
+    out = Path("reports", f"{case_path.stem}.xlsx")
+    return out.with_stem(f"{out.stem}-again") if out.resolve() == case_path.resolve() else out
+
+
 def _files(json_path: Path | None) -> list[Path]:
     return [] if json_path in (None, STANDARD_OUTPUT) else [json_path]
 
@@ -240,7 +248,7 @@ def _check_targets(loaded: LoadedCase, *targets: Path) -> None:
     """Refuse targets that cannot be written or would bury what was read, before any solving."""
     from appraise.files import check_target
 
-    taken = {loaded.path.resolve(): "the case itself", loaded.hours_path.resolve(): "the hours of the case"}
+    taken = {loaded.hours_path.resolve(): "the hours of the case", loaded.path.resolve(): "the case itself"}
     for target in targets:
         check_target(target)
         holder = taken.setdefault(target.resolve(), "another result")

@@ -22,7 +22,7 @@ class Demand:
     supply_C: Array
     return_C: Array
     available: Mask  # no outage
-    years: int
+    years: float
 
 
 def changes(case: Case) -> bool:

@@ -189,7 +189,12 @@ def check_report(loaded: LoadedCase) -> str:
         ("drivers", [str(len(case.drivers))]),
     ]
     lines = [
-        fill(f"{name:<11}{', '.join(values) or 'none'}", WIDTH, subsequent_indent=" " * 11)
+        fill(
+            f"{name:<11}{', '.join(values) or 'none'}",
+            WIDTH,
+            subsequent_indent=" " * 11,
+            break_on_hyphens=False,
+        )
         for name, values in facts
     ]
     doubts = problem_list(loaded.doubts, "doubt") if loaded.doubts else "Nothing in it is doubtful."

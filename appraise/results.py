@@ -152,7 +152,7 @@ def _finding(check: Check) -> str:
     measured = check.value is not None and check.limit is not None
     by = f" {check.value:.4g}, limit {check.limit:.4g};" if measured else ""
     text = f"{check.name}:{by} {check.message}"
-    return fill(text, WIDTH, initial_indent="  ", subsequent_indent="    ")
+    return fill(text, WIDTH, initial_indent="  ", subsequent_indent="    ", break_on_hyphens=False)
 
 
 _CAUTION = (

@@ -19,6 +19,8 @@ from appraise.numerics import Array
 from appraise.prices import ScenarioPrices
 from appraise.year import Years
 
+Amount = float | Array
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Extra:
@@ -124,30 +126,30 @@ def variable_cost(case: Case) -> Array:
     return np.asarray(opex.variable_per_MWh * (1.0 + opex.change_per_year) ** np.arange(case.study.years))
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class TieIn:
-    """What the baseline would have made and burned in the dates of the tie-in, MWh a year.
+    """What the baseline would have made and burned in the dates of the tie-in, MWh a year; numbers or [draw].
 
     `weighted_power_MWh` counts each hour with its price over the mean, `peak_fuel_MWh` is what the peak
     boilers would burn for the plant's heat.
     """
 
-    power_MWh: float
-    weighted_power_MWh: float
-    premium_MWh: float
-    fuel_MWh: float
-    peak_fuel_MWh: float
+    power_MWh: Amount
+    weighted_power_MWh: Amount
+    premium_MWh: Amount
+    fuel_MWh: Amount
+    peak_fuel_MWh: Amount
 
-    def margin(self, case: Case, prices: ScenarioPrices) -> float:
-        """The baseline's margin lost, price-year money, at the prices of the first operating year."""
+    def margin(self, case: Case, prices: ScenarioPrices) -> Array:
+        """The baseline's margin lost, price-year money, at the prices of the first operating year [...]."""
         plant_co2, peak_co2 = _co2_t_per_MWh(case)
-        carbon = float(prices.carbon[0])
-        return (
-            self.weighted_power_MWh * float(prices.power[0])
-            + self.premium_MWh * float(prices.premium[0])
-            - self.power_MWh * float(prices.fee[0])
-            - self.fuel_MWh * (float(prices.fuel[0]) + carbon * plant_co2)
-            + self.peak_fuel_MWh * (float(prices.peak_fuel[0]) + carbon * peak_co2)
+        carbon = prices.carbon[..., 0]
+        return np.asarray(
+            self.weighted_power_MWh * prices.power[..., 0]
+            + self.premium_MWh * prices.premium[..., 0]
+            - self.power_MWh * prices.fee[..., 0]
+            - self.fuel_MWh * (prices.fuel[..., 0] + carbon * plant_co2)
+            + self.peak_fuel_MWh * (prices.peak_fuel[..., 0] + carbon * peak_co2)
         )
 
 

@@ -83,7 +83,7 @@ class OptionYear:
     below_tail_minimum: Mask  # of those: a tail section below its least flow
     could_gain: Mask  # the option could run, the baseline could not
     greatest: Greatest
-    years: int
+    years: float
 
     @property
     def at_limit(self) -> Mask:

@@ -140,7 +140,7 @@ def test_three_stages_by_nested_brackets(hour, monkeypatch):
     data = three_stages()
     joint = solve(data, "three", *hour)
 
-    def nested(miss, start):
+    def nested(miss, start, before=None):
         def cold(upper: float) -> float:
             return steam.root(lambda f: miss((f, upper))[0], 0.01, upper - 1e-3)
 

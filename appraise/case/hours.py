@@ -52,7 +52,7 @@ class Hours:
     supply_C: Array | None
     return_C: Array | None
     power_price: Array | None
-    number_of_years: int
+    number_of_years: float  # a fraction where some hours stand for all of them
     other_prices: Mapping[str, Array] = field(default_factory=dict)
 
     def price(self, column: str) -> Array | None:

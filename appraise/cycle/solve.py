@@ -15,6 +15,9 @@ from appraise.errors import SolveError
 from appraise.numerics import Array, fixed_point
 
 _LEAST_SHARE, _GREATEST_SHARE = 0.01, 0.99  # of the rise, for every temperature between two stages
+_CAREFUL = ((0.5, 0.05), (0.15, 0.02))  # damping and longest step of the second and third try
+_CAREFUL_STEPS = 500
+_AT_REST = 1e-10
 _OPEN = 1.0 + 1e-9  # opening of a valve above which it would have to raise the pressure
 
 
@@ -98,13 +101,15 @@ def _solve_state(task: Task) -> tuple[Array, Mask]:
         lambda x, index: _step(task.take(index), layout, x), _start(task, layout), tolerance=1e-11
     )
     state, converged = result.x, result.converged
-    if not converged.all():
-        state, converged = _damped(task, layout, state, converged)
-    if not converged.all():
+    for damping, longest in _CAREFUL:
+        if converged.all():
+            break
+        state, converged = _careful(task, layout, state, converged, damping, longest)
+    if not converged.all() and not task.sections:
         _refuse(task, converged)
     shares = shares_reached(state[layout.shares])
     within = (shares >= _LEAST_SHARE) & (shares <= _GREATEST_SHARE)
-    return state, np.asarray(within.all(axis=0))
+    return state, np.asarray(within.all(axis=0)) & converged
 
 
 def _refuse(task: Task, converged: Mask) -> None:
@@ -115,17 +120,21 @@ def _refuse(task: Task, converged: Mask) -> None:
     )
 
 
-def _damped(task: Task, layout: Layout, state: Array, converged: Mask) -> tuple[Array, Mask]:
-    """Half steps of plain substitution for the few points where the accelerated iteration ran astray."""
+def _careful(
+    task: Task, layout: Layout, state: Array, converged: Mask, damping: float, longest: float
+) -> tuple[Array, Mask]:
+    """Damped substitution in short steps for the few points where the accelerated iteration ran astray."""
     index = np.flatnonzero(~converged)
     rest = task.take(index)
     x = _start(rest, layout)
-    for _ in range(400):
+    for _ in range(_CAREFUL_STEPS):
         change = _step(rest, layout, x) - x
-        x = x + 0.5 * change
+        x = x + np.clip(damping * change, -longest, longest)
+        if np.abs(change).max() <= _AT_REST:
+            break
     state, converged = state.copy(), converged.copy()
     state[:, index] = x
-    converged[index] = np.abs(change).max(axis=0) <= 1e-10
+    converged[index] = np.abs(change).max(axis=0) <= _AT_REST
     return state, converged
 
 

@@ -8,7 +8,7 @@ from . import steam
 from .expansion import MainLine, main_line
 from .feed import Feed, Reference, cone_bar, feed
 from .plain import Option, Plant
-from .shells import NoSolution, Train
+from .shells import Memory, NoSolution, Train
 
 
 @dataclass(frozen=True)
@@ -23,13 +23,19 @@ class Balance:
     power_main_MW: float
     power_tail_MW: float
     power_lost_MW: float  # shaft power above the generators' limits
-    gross_lost_MW: float  # the same at the terminals
+    lost_main_MW: float
+    lost_tail_MW: float
+    gross_lost_MW: float  # both at the terminals
     power_gross_MW: float
     power_net_MW: float
     pump_MW: float
     new_stage_MW: float
     fuel_MW: float
     closure: float
+
+    @property
+    def bleed_too_low(self) -> bool:
+        return self.feed.bleed_bar < self.feed.deaerator_bar
 
 
 def balance(
@@ -38,32 +44,34 @@ def balance(
     reference: Reference,
     train_at: Callable[[MainLine], Train],
     network_kg_s: float,
+    memory: Memory | None = None,
 ) -> Balance:
     """First on the bleed; where that lies below the deaerator, again on throttled live steam."""
-    inputs = (plant, option, reference, train_at, network_kg_s)
-    found = _settled(*inputs, on_live=False)
-    if found.feed.bleed_bar < found.feed.deaerator_bar:
-        return _settled(*inputs, on_live=True)
+    inputs = (plant, option, reference, train_at, network_kg_s, memory or Memory())
+    found = settled(*inputs, on_live=False)
+    if found.bleed_too_low:
+        return settled(*inputs, on_live=True)
     return found
 
 
-def _settled(plant, option, reference, train_at, network_kg_s, on_live: bool) -> Balance:
-    """Repeat until the load that sets the efficiency is the load that comes out."""
-    load = 1.0
-    for _ in range(300):
+def settled(plant, option, reference, train_at, network_kg_s, memory: Memory, on_live: bool) -> Balance:
+    """The load that sets the efficiency must be the load that comes out: secants on their difference."""
+    load, before = memory.load, None
+    for _ in range(100):
         line = main_line(plant, load)
         found = train_at(line)
         water = feed_at(plant, option, reference, found, line, on_live)
-        previous, load = load, water.live_kg_s / reference.live_kg_s
-        if abs(load - previous) < 2e-15 * max(1.0, load) or _flat(plant):
-            return _powers(plant, option, reference, found, water, line, load, on_live, network_kg_s)
-    if abs(load - previous) < 1e-12:
-        return _powers(plant, option, reference, found, water, line, load, on_live, network_kg_s)
+        comes_out = water.live_kg_s / reference.live_kg_s
+        miss = comes_out - load
+        resting = before is not None and abs(miss) >= abs(before[1])  # rounding is all that is left
+        if abs(miss) < (1e-11 if resting else 1e-13) * max(1.0, load) or plant.part_load.flat:
+            memory.load = comes_out
+            return _powers(plant, option, reference, found, water, line, comes_out, on_live, network_kg_s)
+        step = miss
+        if before is not None and before[1] != miss:
+            step = -miss * (load - before[0]) / (miss - before[1])
+        before, load = (load, miss), load + step
     raise NoSolution("load does not settle")
-
-
-def _flat(plant: Plant) -> bool:
-    return plant.part_load.flat
 
 
 def feed_at(plant, option, reference, found: Train, line: MainLine, on_live: bool) -> Feed:
@@ -98,7 +106,7 @@ def new_stage_MW(plant: Plant, option: Option, reference: Reference, found: Trai
 
 @dataclass(frozen=True)
 class _Terminals:
-    """Gross power, and what the limits take: shaft power of either machine, and power at the terminals, MW."""
+    """Gross power, and what the limits take: shaft power of either machine, power at the terminals, MW."""
 
     gross: float
     lost_main: float
@@ -146,6 +154,8 @@ def _powers(plant, option, reference, found, water, line, load, on_live, network
         power_main_MW=main,
         power_tail_MW=tail,
         power_lost_MW=lost,
+        lost_main_MW=made.lost_main,
+        lost_tail_MW=made.lost_tail,
         gross_lost_MW=made.lost_gross,
         power_gross_MW=made.gross,
         power_net_MW=made.gross - pumps - plant.auxiliary_MW - new,

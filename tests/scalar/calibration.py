@@ -1,4 +1,4 @@
-"""One steady test of the plant as it stands: which main efficiency, and which fouling, would have given it."""
+"""One steady test of the plant as it stands: which efficiency and which fouling, would have given it?"""
 
 import dataclasses
 from collections.abc import Callable
@@ -16,21 +16,32 @@ _DIFFERENCE_K = (0.05, 40.0)
 def calibrated(plant: Plant, at_test: BaselineAtTest) -> Plant:
     """The plant with the efficiency that meets the measured gross power.
 
-    Where the exhaust pressure was measured too, at the turbine's flange, the terminal difference of the design
-    point is sought around that: for every trial of it, the efficiency that meets the power.
+    Where the exhaust pressure was measured too, at the turbine's flange, the terminal difference of the
+    design point is found from it; the two are repeated in turn until neither moves.
     """
     test = plant.measured
     if test is None:
         return plant
-    if test.exhaust_bar is None:
-        return _with_power(plant, at_test)
+    for _ in range(20):
+        before = plant
+        if test.exhaust_bar is not None:
+            plant = _with_exhaust(plant, at_test)
+        plant = _with_power(plant, at_test)
+        moved = abs(plant.efficiency - before.efficiency)
+        moved += abs(plant.terminal_difference_K - before.terminal_difference_K)
+        if moved < 1e-11:
+            return plant
+    raise ValueError("efficiency and terminal difference do not settle")
+
+
+def _with_exhaust(plant: Plant, at_test: BaselineAtTest) -> Plant:
+    def at(difference_K: float) -> Plant:
+        return dataclasses.replace(plant, terminal_difference_K=difference_K)
 
     def miss(difference_K: float) -> float:
-        trial = _with_power(dataclasses.replace(plant, terminal_difference_K=difference_K), at_test)
-        return at_test(trial).train.shells[-1].steam.pressure_bar - test.exhaust_bar
+        return at_test(at(difference_K)).train.shells[-1].steam.pressure_bar - plant.measured.exhaust_bar
 
-    found = steam.root(miss, *_DIFFERENCE_K)
-    return _with_power(dataclasses.replace(plant, terminal_difference_K=found), at_test)
+    return at(steam.root(miss, *_DIFFERENCE_K))
 
 
 def _with_power(plant: Plant, at_test: BaselineAtTest) -> Plant:

@@ -85,7 +85,9 @@ def feed(
     live = into.live_kg_s(bleed.enthalpy, outlet, share, heater.drain)
     floating = live * (1.0 - share) < into.condensate_kg_s
     if floating:  # no bleed is wanted: the pressure stays, and the outlet is as hot as its inflows make it
-        outlet = _floating_outlet(into, heater, rise, water.enthalpy, steam.saturated(plant.boiler_bar, 0.0).enthalpy)
+        outlet = _floating_outlet(
+            into, heater, rise, water.enthalpy, steam.saturated(plant.boiler_bar, 0.0).enthalpy
+        )
         share = heater.share(into.blowdown, outlet + rise)
         live = into.condensate_kg_s / (1.0 - share)
     return Feed(

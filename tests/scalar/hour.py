@@ -5,92 +5,12 @@ from dataclasses import dataclass, replace
 from typing import Any
 
 from . import steam
-from .balance import Balance, balance
+from .balance import Balance, settled
 from .design import Design, OptionDesign
 from .plain import Plant
-from .shells import NoSolution, Rating, Train
+from .report import Point, stages_of, states_of
+from .shells import Memory, NoSolution, Rating, Train
 from .sliding import settle
-from .steam import State
-
-
-@dataclass(frozen=True)
-class StagePoint:
-    shell_bar: float
-    saturation_C: float
-    water_in_C: float
-    water_out_C: float
-    steam_kg_s: float
-    steam_kJ_kg: float
-    moisture: float
-    drain_kJ_kg: float
-    heat_MW: float
-
-
-@dataclass(frozen=True)
-class Point:
-    """One hour; off means every number of the plant is zero and the peak boilers carry the demand."""
-
-    on: bool
-    as_baseline: bool
-    why: str  # what keeps the option from running by itself
-    heat_MW: float
-    power_gross_MW: float
-    power_net_MW: float
-    power_lost_MW: float  # at the shaft
-    gross_lost_MW: float  # at the terminals
-    fuel_MW: float
-    live_steam_kg_s: float
-    bleed_kg_s: float
-    heater_bleed_kg_s: float
-    bleed_bar: float
-    network_kg_s: float
-    flue_gas_MW: float
-    peak_heat_MW: float
-    peak_fuel_MW: float
-    deaerator_on_live_steam: bool
-    limit: str  # which one holds the plant below the demand: live steam, heat, fuel, or ""
-    could_gain: bool
-    closure: float
-    stages: tuple[StagePoint, ...]
-    states: dict[str, State]
-    balance: Balance | None
-
-    @property
-    def at_limit(self) -> bool:
-        return self.limit != ""
-
-
-def _stages(found: Train) -> tuple[StagePoint, ...]:
-    return tuple(
-        StagePoint(
-            s.pressure_bar,
-            s.saturation_C,
-            s.water_in_C,
-            s.water_out_C,
-            s.steam_kg_s,
-            s.steam.enthalpy,
-            s.steam.moisture,
-            s.drain.enthalpy,
-            s.heat_kW / 1e3,
-        )
-        for s in found.shells
-    )
-
-
-def _states(plant: Plant, found: Balance) -> dict[str, State]:
-    water, shells = found.feed, found.train.shells
-    states = {"live steam": steam.at(plant.live_bar, plant.live_C)}
-    if water.heater_bleed is not None:
-        states["heater bleed"] = water.heater_bleed
-    states["deaerator bleed"] = water.bleed
-    for k in reversed(range(len(shells))):
-        states[f"exhaust {k + 1}"] = shells[k].steam
-    after = {
-        "condensate after pump": (water.deaerator_bar, water.condensate_enthalpy),
-        "feed water after deaerator": (water.deaerator_bar, water.deaerator_enthalpy),
-        "feed water to boiler": (plant.boiler_bar, water.boiler_inlet_enthalpy),
-    }
-    return states | {label: steam.at_enthalpy(*state) for label, state in after.items()}
 
 
 @dataclass(frozen=True)
@@ -111,7 +31,7 @@ class Run:
     flue_gas_MW: float
 
 
-def run(plant: Plant, sized: OptionDesign, reference, hour: Hour, heat_MW: float) -> Run:
+def run(plant: Plant, sized: OptionDesign, reference, hour: Hour, heat_MW: float, memory: Memory) -> Run:
     """The plant delivering ``heat_MW`` in this hour, without limits; raises NoSolution."""
     h = _water(plant)
     cold = h(hour.return_C)
@@ -120,33 +40,44 @@ def run(plant: Plant, sized: OptionDesign, reference, hour: Hour, heat_MW: float
     if plant.series and heat_MW < hour.heat_MW:
         out_C = steam.at_enthalpy(plant.network_bar, cold + heat_MW * 1e3 / flow).temperature_C
 
-    def with_flue_gas(heat: float) -> Balance:
-        in_C = hour.return_C
-        if heat > 0.0:
-            in_C = steam.at_enthalpy(plant.network_bar, cold + heat * 1e3 / flow).temperature_C
-        return _turbine(plant, sized, reference, flow, in_C, out_C)
-
     ratio = plant.flue_gas.ratio(hour.return_C) if plant.flue_gas else 0.0
-    first = with_flue_gas(0.0)
-    if ratio == 0.0:
-        return Run(first, heat_MW, 0.0)
-    recovered = steam.root(lambda q: ratio * with_flue_gas(q).fuel_MW - q, 0.0, ratio * first.fuel_MW, 1e-12)
-    return Run(with_flue_gas(recovered), heat_MW, recovered)
+
+    def settle_gas(on_live: bool) -> Run:
+        """Fuel and flue-gas heat together, the deaerator's steam being chosen: secants on the latter."""
+        gas, before = ratio * 1.5 * (1.0 - 1.5 * ratio) * heat_MW, None
+        for _ in range(60):
+            in_C = hour.return_C
+            if gas > 0.0:
+                in_C = steam.at_enthalpy(plant.network_bar, cold + gas * 1e3 / flow).temperature_C
+            found = _turbine(plant, sized, reference, flow, in_C, out_C, memory, on_live)
+            miss = ratio * found.fuel_MW - gas
+            if abs(miss) < 1e-12 * heat_MW:
+                return Run(found, heat_MW, gas)
+            step = miss
+            if before is not None and before[1] != miss:
+                step = -miss * (gas - before[0]) / (miss - before[1])
+            before, gas = (gas, miss), gas + step
+        raise NoSolution("flue-gas heat does not settle")
+
+    found = settle_gas(on_live=False)
+    return settle_gas(on_live=True) if found.balance.bleed_too_low else found
 
 
 def _water(plant: Plant) -> Callable[[float], float]:
     return lambda temperature_C: steam.at(plant.network_bar, temperature_C).enthalpy
 
 
-def _turbine(plant, sized: OptionDesign, reference, flow: float, in_C: float, out_C: float) -> Balance:
+def _turbine(
+    plant, sized: OptionDesign, reference, flow, in_C, out_C, memory: Memory, on_live: bool
+) -> Balance:
     o, share = sized.option, flow / reference.network_kg_s
     exponents = (*([o.flow_exponent] * (o.stages - 1)), plant.flow_exponent)
     ratings = tuple(Rating(UA=UA0 * share**n) for UA0, n in zip(sized.UA0, exponents, strict=True))
 
     def train_at(line) -> Train:
-        return settle(plant, o, ratings, line, flow, in_C, out_C, sized.fixed)
+        return settle(plant, o, ratings, line, flow, in_C, out_C, sized.fixed, memory)
 
-    return balance(plant, o, reference, train_at, flow)
+    return settled(plant, o, reference, train_at, flow, memory, on_live)
 
 
 def _use(plant: Plant, found: Run) -> dict[str, float]:
@@ -159,32 +90,44 @@ def _use(plant: Plant, found: Run) -> dict[str, float]:
     return use
 
 
-def _limited(plant: Plant, sized: OptionDesign, reference, hour: Hour) -> tuple[Run, str]:
-    """The run at the least of demand and limits, and the name of the limit that holds it."""
+def _limited(
+    plant: Plant, sized: OptionDesign, reference, hour: Hour, in_reach: bool = True
+) -> tuple[Run, str]:
+    """The run at the least of demand and limits, and the name of the limit that holds it.
+
+    ``in_reach``: whether a limit could matter at all, where the demand itself allows no operation.
+    """
+    memory = Memory()
+
+    def at(heat_MW: float) -> Run:
+        return run(plant, sized, reference, hour, heat_MW, memory)
 
     def excess(heat_MW: float) -> float:
-        return max(_use(plant, run(plant, sized, reference, hour, heat_MW)).values()) - 1.0
+        return max(_use(plant, at(heat_MW)).values()) - 1.0
 
     start = hour.heat_MW
     if plant.max_heat_MW is not None and plant.flue_gas is None:
         start = min(start, plant.max_heat_MW)
-    within, beyond, refused = start, None, None
+    within, beyond = start, None
     while True:  # from the demand down to a heat within all limits
         try:
-            over = excess(within)
-        except (NoSolution, ValueError) as error:  # far above its limits a plant may have no operation at all
-            over, refused = None, error
-        if over is not None and over <= 1e-12:
+            found = at(within)
+            over = max(_use(plant, found).values()) - 1.0
+        except (NoSolution, ValueError):  # far above its limits a plant may have no operation at all
+            if not in_reach or beyond is not None or within < 0.2 * start:
+                raise
+            memory = Memory()
+            within *= 0.93
+            continue
+        if over <= 1e-12:
             break
-        beyond = within if over is not None else None
-        within *= 0.93 if over is None else min(0.97, 0.99 / (1.0 + over))
-        if within < 0.02 * hour.heat_MW:
-            raise NoSolution("no heat within the limits") from refused
+        beyond = within
+        within *= min(0.98, 0.99 / (1.0 + over))
     if within == start:
-        return run(plant, sized, reference, hour, within), "" if start == hour.heat_MW else "heat"
+        return found, "" if start == hour.heat_MW else "heat"
     if beyond is None:
-        raise NoSolution("no operation at the demand") from refused
-    found = run(plant, sized, reference, hour, steam.root(excess, within, beyond, 1e-11))
+        raise NoSolution("no operation at the demand")
+    found = at(steam.root(excess, within, beyond, 1e-11))
     use = _use(plant, found)
     return found, max(use, key=use.get)
 
@@ -243,16 +186,16 @@ def _on(plant: Plant, hour: Hour, found: Run, limit: str) -> Point:
         limit=limit,
         could_gain=False,
         closure=b.closure,
-        stages=_stages(b.train),
-        states=_states(plant, b),
+        stages=stages_of(b.train),
+        states=states_of(plant, b),
         balance=b,
     )
 
 
-def _own(design: Design, key: str, hour: Hour) -> Point:
+def _own(design: Design, key: str, hour: Hour, in_reach: bool = True) -> Point:
     """The option by itself, limits and minimum flow applied; raises NoSolution."""
     plant, sized = design.plant, design.options[key]
-    found, limit = _limited(plant, sized, design.reference, hour)
+    found, limit = _limited(plant, sized, design.reference, hour, in_reach)
     if found.balance.feed.live_kg_s < plant.min_kg_s:
         return _off(plant, hour)
     return _on(plant, hour, found, limit)
@@ -275,12 +218,16 @@ def off(design: Design, heat_MW: float, supply_C: float, return_C: float) -> dic
 
 def _beside(design: Design, key: str, hour: Hour, base: Point) -> Point:
     """An option beside the baseline: it waits for it, and runs as it where it cannot run by itself."""
+    plant = design.plant
+    near = base.limit != "" or base.live_steam_kg_s > 0.85 * plant.max_kg_s
+    near |= plant.max_fuel_MW is not None and base.fuel_MW > 0.85 * plant.max_fuel_MW
+    near |= plant.max_heat_MW is not None and base.heat_MW > 0.85 * plant.max_heat_MW
     try:
-        mine = _own(design, key, hour)
+        mine = _own(design, key, hour, near)
     except NoSolution as error:
         return replace(base, as_baseline=base.on, why=str(error) if base.on else "")
-    if mine.on and not base.on and not design.plant.extra_running:
-        return _off(design.plant, hour, could_gain=True)
+    if mine.on and not base.on and not plant.extra_running:
+        return _off(plant, hour, could_gain=True)
     return mine
 
 

@@ -126,6 +126,15 @@ class Fixed:
     flow_kg_s: tuple[float, ...]
 
 
+@dataclass
+class Memory:
+    """Where the last solve of the same hour ended: a good place to start the next from, and nothing more."""
+
+    load: float = 1.0
+    fractions: tuple[float, ...] | None = None
+    flows: tuple[float, ...] | None = None
+
+
 @dataclass(frozen=True)
 class Train:
     shells: tuple[Shell, ...]
@@ -159,25 +168,24 @@ def train(
     temperatures_C: tuple[float, ...],
     fixed: Fixed | None = None,
     held: bool = False,
+    memory: Memory | None = None,
 ) -> Train:
     """All shells at given water temperatures (return ... supply).
 
     A tail efficiency or a valve that depends on the section's flow is settled by repetition.
     """
-    guess = fixed.flow_kg_s if fixed else (1.0,) * (option.stages - 1)
-    design = guess
+    memory = memory or Memory()
+    design = fixed.flow_kg_s if fixed else (1.0,) * (option.stages - 1)
+    guess = memory.flows or design
     for _ in range(200):
         valves = fixed if held else None
         found = _once(plant, option, ratings, line, flow_kg_s, temperatures_C, guess, design, valves)
         if fixed is None or option.stages == 1 or (option.tail_part_load.flat and not held):
             return found
-        if max(abs(a / b - 1.0) for a, b in zip(found.flows, guess, strict=True)) < 2e-15:
+        if max(abs(a / b - 1.0) for a, b in zip(found.flows, guess, strict=True)) < 1e-13:
+            memory.flows = found.flows
             return found
-        if found.flows == guess:
-            return found
-        previous, guess = guess, found.flows
-    if max(abs(a / b - 1.0) for a, b in zip(previous, guess, strict=True)) < 1e-13:
-        return found
+        guess = found.flows
     raise NoSolution("section flows do not settle")
 
 

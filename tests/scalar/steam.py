@@ -7,6 +7,7 @@ import os
 import sys
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import lru_cache
 
 from scipy.optimize import brentq
 
@@ -62,6 +63,7 @@ def _read(quality: float | None) -> State:
     )
 
 
+@lru_cache(maxsize=20_000)
 def saturated(pressure_bar: float, quality: float) -> State:
     """Saturated liquid (quality 0) or vapour (quality 1) at a pressure."""
     _backend.update(_coolprop.PQ_INPUTS, pressure_bar * 1e5, quality)

@@ -3,6 +3,7 @@
 Hours are plain rows; every sum is a loop over them.
 """
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cached_property
 from typing import Any
@@ -121,8 +122,10 @@ class Sums:
 class Year:
     """All hours of a case solved. ``years`` is how many calendar years the rows cover."""
 
-    def __init__(self, data: dict[str, Any], rows: list[Row], years: int = 1) -> None:
-        self.data, self.rows, self.years = data, rows, years
+    def __init__(
+        self, data: dict[str, Any], rows: Sequence[Row], years: int = 1, scenario: str = "central"
+    ) -> None:
+        self.data, self.rows, self.years, self.scenario = data, rows, years, scenario
         self.design = design(data)
         self.base = self.design.baseline_key
         self.knots = solved_years(data)
@@ -163,9 +166,9 @@ class Year:
         own = o.tail_availability if o.stages > 1 else 1.0
         return self.data["year"].get("availability", 1.0) * own
 
-    def increment(self, scenario: str, key: str, k: int) -> dict[str, float]:
+    def increment(self, key: str, k: int) -> dict[str, float]:
         """Extra power, weighted and supported power, fuel and peak fuel of operating year k, MWh."""
-        now, share = prices(self.data, scenario, k), self._own_share(key) / self.years
+        now, share = prices(self.data, self.scenario, k), self._own_share(key) / self.years
         sums = dict.fromkeys(("power", "weighted", "supported", "fuel", "peak"), 0.0)
         for hour in range(len(self.rows)):
             if self.bypassed(key, hour, k, now):
@@ -178,9 +181,9 @@ class Year:
             sums["peak"] -= share * more.heat / now.peak_efficiency
         return sums
 
-    def sums(self, scenario: str, key: str) -> Sums:
-        """First year, availability and bypass in it: a x option + (1 - a) x baseline while the plant is up."""
-        now, up = prices(self.data, scenario, 0), self.data["year"].get("availability", 1.0)
+    def sums(self, key: str) -> Sums:
+        """First year, with bypass: while the plant is up, a x option + (1 - a) x baseline."""
+        now, up = prices(self.data, self.scenario, 0), self.data["year"].get("availability", 1.0)
         a = self._own_share(key) / up
         power = fuel = heat = gross = demand = 0.0
         for hour in range(len(self.rows)):
