@@ -16,6 +16,7 @@ from appraise.case.hours import Hours
 from appraise.case.load import Case
 from appraise.cash_flow import CashFlow
 from appraise.chain import Physics, ScenarioRun
+from appraise.draws import METHOD_LIMIT, MethodError
 from appraise.measures import internal_rate
 from appraise.year import OptionYear
 
@@ -41,11 +42,13 @@ def checks(
     physics: Physics,
     bought: tuple[OptionCapital, ...],
     runs: tuple[ScenarioRun, ...],
+    method_error: MethodError | None,
 ) -> tuple[Check, ...]:
     """Every check of a study, the numerical ones first."""
     return (
         *_closures(physics),
         *_money(runs),
+        *_draws(method_error),
         *_moisture(hours, physics),
         *_flashing(physics),
         *_existing(hours, physics),
@@ -102,6 +105,18 @@ def _money(runs: tuple[ScenarioRun, ...]) -> Iterator[Check]:
         max(_left_at_irr(flow) for flow in flows) / scale,
         1e-9,
         "by an independent library, every option and scenario, relative to the largest flow",
+    )
+
+
+def _draws(error: MethodError | None) -> Iterator[Check]:
+    if error is None:
+        return
+    yield _limited(
+        "draws: fitted response against full solves",
+        error.root_mean_square,
+        METHOD_LIMIT,
+        f"root mean square over the deviation of NPV, {error.checked} draws solved in full; the largest is "
+        f"{100 * error.largest:.1f} %, the chance of a positive NPV shifts by {100 * error.shift:.1f} points",
     )
 
 

@@ -172,10 +172,23 @@ def balance(case_path: Path, key: str | None, point: Point | None, json_path: Pa
 @click.option("--out", metavar="FILE.xlsx", type=click.Path(path_type=Path), help="[reports/CASE.xlsx]")
 @json_option
 @click.option("--quiet", is_flag=True, help="Print nothing but errors.")
-@click.option("--draws", type=click.IntRange(min=0), default=0, hidden=True)
-@click.option("--verify", type=click.IntRange(min=0), default=0, hidden=True)
+@click.option(
+    "--draws", metavar="N", type=click.IntRange(0, 1_000_000), help="Draws of the risk. [what CASE says]"
+)
+@click.option(
+    "--verify",
+    metavar="N",
+    type=click.IntRange(2, 10_000),
+    default=12,
+    help="Draws solved in full, to measure the error of the method. [12]",
+)
 def run(
-    case_path: Path, out: Path | None, json_path: Path | None, quiet: bool, draws: int, verify: int
+    case_path: Path,
+    out: Path | None,
+    json_path: Path | None,
+    quiet: bool,
+    draws: int | None,
+    verify: int,
 ) -> None:
     """The whole study of CASE, as a workbook.
 
@@ -189,9 +202,6 @@ def run(
       appraise run marrowby/marrowby.toml --out case.xlsx --json results.json
       appraise run case.xlsx
     """
-    for name, given in (("--draws", draws), ("--verify", verify)):
-        if given:
-            raise click.UsageError(f"{name}: not available yet")
     out = out or _default_out(case_path)
     if out.suffix.lower() != ".xlsx":
         raise click.UsageError(f"--out: '{out}' does not end in .xlsx")
@@ -206,7 +216,7 @@ def run(
     from appraise.workbook.book import workbook_bytes
 
     with _progress(shown=not quiet) as progress:
-        study = run_study(loaded, progress=progress)
+        study = run_study(loaded, progress, draws, verify)
         contents = {out: workbook_bytes(study)}
     text = output.json_text(results.study_json(study)) if json_path else ""
     if json_path != STANDARD_OUTPUT and not quiet:
@@ -214,11 +224,34 @@ def run(
     _deliver(contents, json_path, text, quiet)
 
 
-@program.command(hidden=True, context_settings={"ignore_unknown_options": True})
-@click.argument("rest", nargs=-1, type=click.UNPROCESSED)
-def optimum(rest: tuple[str, ...]) -> None:
-    """Design choice: split, terminal difference, number of stages."""
-    raise click.UsageError("optimum: not available yet")
+@program.command()
+@case_argument
+@click.option("--option", "key", metavar="KEY", help="Which option. [the best one with several stages]")
+@json_option
+def optimum(case_path: Path, key: str | None, json_path: Path | None) -> None:
+    """Design choice: split, terminal difference, stages, drain route, surface.
+
+    NPV in the reference scenario with one of them changed at a time, and with terminal difference and split
+    together.
+
+    \b
+    Example:
+      appraise optimum marrowby/marrowby.toml
+    """
+    from appraise import output, results
+    from appraise.case.load import load_case
+
+    loaded = load_case(case_path)
+    _check_key(loaded, key)
+    _check_targets(loaded, *_files(json_path))
+    from appraise.study import design_of
+
+    choice = design_of(loaded, key)
+    if choice is None:
+        raise click.UsageError("optimum: needs an option with at least two stages")
+    if json_path != STANDARD_OUTPUT:
+        click.echo(results.optimum_table(choice, loaded.case.study.currency))
+    _deliver({}, json_path, output.json_text({"design_choice": choice}), quiet=False)
 
 
 def _point_title(loaded: LoadedCase, point: Point | None) -> str:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import fields
 from textwrap import fill
 from typing import TYPE_CHECKING, Any
 
@@ -12,6 +13,7 @@ if TYPE_CHECKING:
     from appraise.cash_flow import CashFlow
     from appraise.checks import Check
     from appraise.measures import Measures
+    from appraise.optimum import DesignChoice
     from appraise.study import Study
 
 
@@ -30,6 +32,9 @@ def study_json(study: Study) -> dict[str, Any]:
         "scenarios": _scenarios(study),
         "tornado": plain(study.tornado, "tornado"),
         "gain_moves": plain(study.moves, "gain_moves"),
+        "draws": _draws(study),
+        "break_even": plain(study.grids, "break_even"),
+        "design_choice": plain(study.design_choice, "design_choice"),
         "checks": plain(study.checks, "checks"),
     }
 
@@ -62,6 +67,18 @@ def _flow(study: Study, flow: CashFlow, told: Measures) -> dict[str, Any]:
         "net": plain(flow.net, place),
         **plain(told, place),
     }
+
+
+def _draws(study: Study) -> list[dict[str, Any]]:
+    """Statistics by option; the draws themselves stay in the workbook."""
+    if study.risk is None:
+        return []
+    error = plain(study.risk.method_error, "draws")
+    found = []
+    for one in study.risk.options:
+        entry = {f.name: plain(getattr(one, f.name), "draws") for f in fields(one) if f.name != "npv"}
+        found.append(entry | {"rank_correlation": dict(one.rank_correlation), "method_error": error})
+    return found
 
 
 def _scenarios(study: Study) -> dict[str, Any]:
@@ -159,3 +176,30 @@ _CAUTION = (
     "Pre-feasibility only and no investment advice: blading, pressure parts, permits and grid\n"
     "connection need the makers, the local codes and licensed engineers."
 )
+
+
+def optimum_table(choice: DesignChoice, currency: str) -> str:
+    """Every curve of the design choice as a table, then the joint optimum."""
+    title = f"{choice.option}: NPV in scenario {choice.scenario}, thousand {currency}; as stated "
+    parts = [heading(f"{title}{choice.stated_npv / 1e3:,.0f}")]
+    for curve in choice.curves:
+        unit = f", {curve.unit}" if curve.unit else ""
+        rows: list[list[Cell]] = [
+            [
+                value if isinstance(value, str) else f"{value:g}",
+                None if npv is None else npv / 1e3,
+                "best" if value == curve.best else reason or "",
+            ]
+            for value, npv, reason in zip(curve.values, curve.npv, curve.reason, strict=True)
+        ]
+        columns = [Column(f"{curve.label}{unit}"), Column("NPV", "", 0), Column("")]
+        parts.append(table(columns, rows))
+        if curve.flat is not None:
+            low, high = curve.flat
+            parts.append(f"within 1 % of the best from {low:.3g} to {high:.3g}{unit.replace(',', '')}")
+    if choice.best_joint_npv is not None:
+        parts.append(
+            f"Terminal difference and split together: {choice.best_difference_K:g} K and "
+            f"{choice.best_cold_share:g} of the rise in the cold stage, {choice.best_joint_npv / 1e3:,.0f}."
+        )
+    return "\n\n".join(parts)

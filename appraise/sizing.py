@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from appraise.cycle.design import OptionDesign
 from appraise.cycle.plant import PlantData
@@ -57,30 +57,68 @@ def option_size(option: OptionDesign, plant: PlantData, years: tuple[OptionYear,
     )
 
 
+@dataclass(frozen=True, slots=True)
+class SetBy:
+    """What asked for one size of one stage: an hour of a solved year, or the design point (both None).
+
+    name : one of `case.money.SIZE_NAMES`. year : position among the solved years. hour : in the series.
+    """
+
+    stage: int
+    name: str
+    value: float
+    year: int | None = None
+    hour: int | None = None
+
+
+def set_by(option: OptionDesign, plant: PlantData, years: tuple[OptionYear, ...]) -> tuple[SetBy, ...]:
+    """Every size of an option that is not 0, stage by stage, and what set it."""
+    found = (_stage_needs(option, plant, years, i) for i in range(option.train.number))
+    return tuple(need for needs in found for need in needs.values() if need.value)
+
+
 def _stage_size(option: OptionDesign, plant: PlantData, years: tuple[OptionYear, ...], i: int) -> StageSize:
+    needs = _stage_needs(option, plant, years, i)
+    sizes = {name: need.value for name, need in needs.items()}
+    return StageSize(stage=i + 1, new=not option.train.stages[i].existing, **sizes)
+
+
+def _stage_needs(
+    option: OptionDesign, plant: PlantData, years: tuple[OptionYear, ...], i: int
+) -> dict[str, SetBy]:
+    """Every size of a stage by its name; of the existing one only what is added to its surface."""
     train, at = option.train, option.solution
     new, surface = not train.stages[i].existing, option.surface[i]
     flange = exhaust_state(at.shells.shell_bar[i], plant.exhaust_loss_share)
     through = at.shells.steam_kg_s[: i + 1].sum(axis=0)
     water = at.network_kg_s * (at.shells.water_kJ_kg[i + 1] - at.shells.water_kJ_kg[i]) / 1e3
 
-    def most(design_point: Array, name: str) -> float:
-        hourly = (float(getattr(year.greatest, name).value[i]) for year in years)
-        return max(float(design_point[0]), *hourly) if new else 0.0
+    def fixed(name: str, value: float) -> SetBy:
+        return SetBy(i + 1, name, value)
 
-    shaft = most(option.energy.section_MW[i], "section_MW")
-    return StageSize(
-        stage=i + 1,
-        new=new,
-        area_m2=surface.total_m2,
-        condensing_area_m2=surface.condensing_m2,
-        drain_area_m2=surface.drain_m2,
-        heat_MW=most(water, "heat_MW"),
-        steam_kg_s=most(at.shells.steam_kg_s[i], "steam_kg_s"),
-        exhaust_m3_s=most(through * volume_ph(flange, at.shells.steam_kJ_kg[i]), "exhaust_m3_s"),
-        tail_shaft_MW=shaft,
-        generator_MW=shaft * train.tail.mechanical_efficiency * train.tail.generator_efficiency,
-        condensate_pump_kW=most(at.condensate_pump_MW[i], "condensate_pump_MW") * 1e3,
-        network_pump_kW=most(option.energy.network_pump_MW[i], "network_pump_MW") * 1e3,
-        vacuum_auxiliary_kW=train.stages[i].vacuum_auxiliary_MW * 1e3,
+    def most(name: str, design_point: Array, hourly: str, scale: float = 1.0) -> SetBy:
+        need = fixed(name, float(design_point[0]) * scale if new else 0.0)
+        for number, year in enumerate(years if new else ()):
+            peaks = getattr(year.greatest, hourly)
+            value = float(peaks.value[i]) * scale
+            if value > need.value:
+                need = SetBy(i + 1, name, value, number, int(peaks.hour[i]))
+        return need
+
+    shaft = most("tail_shaft_MW", option.energy.section_MW[i], "section_MW")
+    power = shaft.value * train.tail.mechanical_efficiency * train.tail.generator_efficiency
+    volume = through * volume_ph(flange, at.shells.steam_kJ_kg[i])
+    needs = (
+        fixed("area_m2", surface.total_m2),
+        fixed("condensing_area_m2", surface.condensing_m2),
+        fixed("drain_area_m2", surface.drain_m2),
+        most("heat_MW", water, "heat_MW"),
+        most("steam_kg_s", at.shells.steam_kg_s[i], "steam_kg_s"),
+        most("exhaust_m3_s", volume, "exhaust_m3_s"),
+        shaft,
+        replace(shaft, name="generator_MW", value=power),
+        most("condensate_pump_kW", at.condensate_pump_MW[i], "condensate_pump_MW", 1e3),
+        most("network_pump_kW", option.energy.network_pump_MW[i], "network_pump_MW", 1e3),
+        fixed("vacuum_auxiliary_kW", train.stages[i].vacuum_auxiliary_MW * 1e3),
     )
+    return {need.name: need for need in needs}

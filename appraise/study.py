@@ -16,10 +16,13 @@ from appraise.cycle.balance import Balance, design_balances
 from appraise.cycle.balance import point_balances as balances_at
 from appraise.cycle.design import design
 from appraise.cycle.limits import boiling_problems, steam_problems
+from appraise.draws import FEWEST_CHECKED, Risk, risk
 from appraise.errors import CaseError
+from appraise.grid import BreakEvenGrid, break_even_grid
 from appraise.measures import Measures, measures
 from appraise.moves import Move, gain_moves
 from appraise.numerics import Array
+from appraise.optimum import DesignChoice, design_choice
 from appraise.sensitivity import Tornado, tornado
 from appraise.trade import YearFigures, year_figures
 
@@ -59,6 +62,9 @@ class Study:
     comparison: Comparison
     tornado: tuple[Tornado, ...]
     moves: tuple[Move, ...]
+    grids: tuple[BreakEvenGrid, ...]  # every option but the baseline, in the reference scenario
+    risk: Risk | None
+    design_choice: DesignChoice | None  # of the best option with several stages
     checks: tuple[Check, ...]
 
     @property
@@ -98,8 +104,17 @@ def _refuse_wet(case: Case) -> None:
         raise CaseError(problems)
 
 
-def run_study(loaded: LoadedCase, progress: Progress = lambda fraction, label: None) -> Study:
-    """Solve everything the case asks for. `progress` hears a fraction from 0 to 1 and what is being done."""
+def run_study(
+    loaded: LoadedCase,
+    progress: Progress = lambda fraction, label: None,
+    draws: int | None = None,
+    verify: int = FEWEST_CHECKED,
+) -> Study:
+    """Solve everything the case asks for.
+
+    progress : hears a fraction from 0 to 1 and what is being done. draws : in place of the case's number.
+    verify : how many draws are solved in full to measure the error of the method.
+    """
     case, hours = loaded.case, loaded.hours
     progress(0.0, "design point and year")
     physics = solve_physics(case, hours)
@@ -116,10 +131,22 @@ def run_study(loaded: LoadedCase, progress: Progress = lambda fraction, label: N
         hours,
         physics,
         comparison.npv[reference],
-        lambda fraction, label: progress(0.2 + 0.65 * fraction, label),
+        lambda fraction, label: progress(0.2 + 0.3 * fraction, label),
     )
-    progress(0.85, "what moves the gain")
+    progress(0.5, "what moves the gain")
     moves = gain_moves(case, loaded.data, hours, physics)
+    number = case.draws.number if draws is None else draws
+    drawn = risk(
+        case,
+        loaded.data,
+        hours,
+        physics,
+        number,
+        verify,
+        lambda fraction, label: progress(0.55 + 0.25 * fraction, label),
+    )
+    progress(0.8, "design choice")
+    choice = chosen_design(case, hours, comparison.npv[reference])
     progress(0.95, "checks")
     return Study(
         loaded=loaded,
@@ -132,8 +159,36 @@ def run_study(loaded: LoadedCase, progress: Progress = lambda fraction, label: N
         comparison=comparison,
         tornado=bars,
         moves=moves,
-        checks=checks(case, hours, physics, bought, runs),
+        grids=tuple(
+            break_even_grid(flow)
+            for flow, option in zip(runs[reference].flows, case.options, strict=True)
+            if not option.baseline
+        ),
+        risk=drawn,
+        design_choice=choice,
+        checks=checks(case, hours, physics, bought, runs, None if drawn is None else drawn.method_error),
     )
+
+
+def design_of(loaded: LoadedCase, key: str | None) -> DesignChoice | None:
+    """Design choice of one option, or of the best one with several stages. None where there is none."""
+    case, hours = loaded.case, loaded.hours
+    physics = solve_physics(case, hours)
+    bought = capital(case, physics.sizes)
+    npv = run_scenario(case, hours, physics, bought, case.study.reference_scenario).npv
+    if key is None:
+        return chosen_design(case, hours, npv)
+    index = next(i for i, option in enumerate(case.options) if option.key == key)
+    return design_choice(case, hours, key, float(npv[index]))
+
+
+def chosen_design(case: Case, hours: Hours, npv: Array) -> DesignChoice | None:
+    """Design choice of the option with several stages that is worth most; None where there is none."""
+    several = [(float(npv[i]), option.key) for i, option in enumerate(case.options) if option.stages > 1]
+    if not several:
+        return None
+    worth, key = max(several)
+    return design_choice(case, hours, key, worth)
 
 
 def _figures(case: Case, physics: Physics, run: ScenarioRun, index: int) -> YearFigures:

@@ -21,7 +21,7 @@ _work: tuple[Callable[[Any], Any], Sequence[Any]] | None = None
 
 
 def processes() -> int:
-    """How many processes to use: as many as processors, or what APPRAISE_PROCESSES in the environment says."""
+    """How many processes to use: one a processor, or what APPRAISE_PROCESSES in the environment says."""
     asked = os.environ.get("APPRAISE_PROCESSES", "")
     if asked.isdigit() and int(asked) > 0:
         return int(asked)

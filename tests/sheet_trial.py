@@ -9,9 +9,17 @@ from libreoffice import Recalculated, recalculate
 
 from appraise.capex import OptionCapital
 from appraise.case.load import Case
+from appraise.sizing import OptionSize
 from appraise.workbook.cells import Sheet
 from appraise.workbook.faults import defined_names
 from appraise.workbook.write import book_bytes
+
+
+@dataclass(frozen=True)
+class Unsized:
+    """Physics without sizes: the sheet of capital then says nothing of them."""
+
+    sizes: tuple[OptionSize, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -20,6 +28,7 @@ class Money:
 
     case: Case
     capital: tuple[OptionCapital, ...]
+    physics: Unsized = Unsized()
 
 
 def address_of(sheets: Sequence[Sheet], name: str) -> tuple[str, str]:

@@ -137,22 +137,11 @@ REFINEMENTS = {
 }
 
 
-def _skip_while_refused(data: dict) -> None:
-    """Where the reader says that a key is not available yet there is nothing to compare."""
-    try:
-        case_of(data)
-    except CaseError as error:
-        if "not available yet" not in str(error):
-            raise
-        pytest.skip(str(error.problems[0]))
-
-
 @pytest.mark.parametrize("name", REFINEMENTS)
 def test_refinements_of_the_plant(name: str) -> None:
     """High-pressure heater, tail inlet loss, tail part load, held temperatures, the tail's minimum flow."""
     changes, options = REFINEMENTS[name]
     data = unlimited(changes, options)
-    _skip_while_refused(data)
     compare_design(data)
     for hour in ((25.0, 98.0, 46.0), (20.0, 85.0, 46.0)):
         compare_hour(data, hour)
@@ -191,7 +180,6 @@ def solved_hour(data: dict, made: Design, option: OptionDesign, hour, limited: b
 @pytest.mark.parametrize("road", ROADS)
 def test_limits_and_other_heat(road: str) -> None:
     data, hour = ROADS[road]
-    _skip_while_refused(data)
     made, theirs = design(case_of(data)), scalar_design(data)
     for option in (o for o in made.options if o.train.key in ("single", "two", "two-pumped")):
         other = scalar_point(data, theirs, option.train.key, *hour)
@@ -249,7 +237,6 @@ def test_random_plants_with_every_refinement(data) -> None:
     stages = data.draw(st.sampled_from([2, 2, 3]))
     own = {"key": "new", "name": "New", "stages": stages, "drain": drain, "temperature_control": control}
     plant["options"].append(own)
-    _skip_while_refused(plant)
     try:
         base = scalar_design(plant).baseline.balance
     except NoSolution:

@@ -14,7 +14,7 @@ from hypothesis import strategies as st
 
 from appraise import sizing
 from appraise.case import money
-from appraise.case.load import NOT_YET, case_from, doubts_of, load_case
+from appraise.case.load import case_from, doubts_of, load_case
 from appraise.case.model import Case
 from appraise.case.paths import edited
 from appraise.errors import CaseError, FileProblem
@@ -379,34 +379,6 @@ def test_all_faults_are_told_at_once():
         "finance.discount_rate: 6.0 given; allowed: a number from 0 to 1",
         "plant.boiler.pressure_bar: 50 bar given; allowed: at least the live steam's 62 bar",
     ]
-
-
-ASKING = {
-    "draws.number": 10,
-    "distribution": {"kind": "uniform", "low": 0.9, "high": 1.1},
-}
-"""A value that asks for something."""
-
-
-@pytest.mark.parametrize(("path", "idle"), NOT_YET)
-def test_what_is_not_available_yet_is_refused_and_its_default_is_not(path: str, idle: object):
-    place = path
-    asking = ASKING[path.removeprefix("drivers.*.")]
-    if path == "drivers.*.distribution":
-        data = minimal_case()
-        data["drivers"][0]["distribution"] = asking
-        place = "drivers[1].distribution"
-    else:
-        data = with_values({place: asking})
-    assert [fault.partition(";")[0] for fault in faults_of(data)] == [f"{place}: not available yet"]
-    if idle is not None:
-        case_from(with_values({place: idle}))
-
-
-def test_a_driver_of_what_is_not_available_yet_is_refused():
-    driver = {"label": "Draws", "path": "draws.number", "low": 1, "high": 2}
-    fault = 'drivers[1].path: "draws.number" given; not available yet'
-    assert faults_of(with_values({"drivers": [driver]})) == [fault]
 
 
 def test_the_starter_case_is_read_without_doubt():

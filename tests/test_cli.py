@@ -298,7 +298,7 @@ def solved(tmp_path_factory: pytest.TempPathFactory) -> study.Study:
 @pytest.fixture
 def at_once(solved: study.Study, monkeypatch: pytest.MonkeyPatch) -> study.Study:
     """Has the study solved already when a command asks for it."""
-    monkeypatch.setattr(study, "run_study", lambda loaded, progress: solved)
+    monkeypatch.setattr(study, "run_study", lambda loaded, *more: solved)
     return solved
 
 
@@ -421,8 +421,6 @@ def test_a_run_that_fails_leaves_the_old_report_alone(
             ["balance", "case.toml", "--json", "folder/../hours.csv"],
             "Error: folder/../hours.csv: would overwrite the hours of the case; give another name\n",
         ),
-        (["run", "case.toml", "--draws", "100"], usage("run", "--draws: not available yet")),
-        (["run", "case.toml", "--verify", "3"], usage("run", "--verify: not available yet")),
         (["run", "case.toml", "--out", "case.pdf"], usage("run", "--out: 'case.pdf' does not end in .xlsx")),
         (
             ["run", "case.toml", "--out", "folder.xlsx"],
@@ -435,7 +433,8 @@ def test_a_run_that_fails_leaves_the_old_report_alone(
         (["run", "no.toml"], usage("run", "Invalid value for 'CASE': File 'no.toml' does not exist.")),
         (
             ["run", "book.xlsx"],
-            "Error: book.xlsx: a workbook as the case is not available yet; allowed: a TOML file\n",
+            "Error: book.xlsx: is damaged or cut short; allowed: a workbook (.xlsx) that `appraise run` "
+            "wrote\n",
         ),
     ],
     ids=lambda value: " ".join(value) if isinstance(value, list) else "",
@@ -451,10 +450,22 @@ def test_a_wrong_call_is_told_why_and_leaves_nothing(
     assert contents(tmp_path) == before
 
 
-def test_design_choice_is_not_available_yet(call: Callable[..., Answer], case: Path) -> None:
-    answer = call("optimum", "case.toml")
-    assert (answer.status, answer.out) == (2, "")
-    assert answer.err.endswith("\n\nError: optimum: not available yet\n")
+def test_design_choice_prints_every_curve(call: Callable[..., Answer], case: Path) -> None:
+    answer = call("optimum", "case.toml", "--json", "choice.json")
+    assert (answer.status, answer.err) == (0, "")
+    assert max(map(len, answer.out.splitlines())) <= 100
+    told = json.loads(Path("choice.json").read_text())["design_choice"]
+    assert [curve["key"] for curve in told["curves"]] == [
+        "terminal_difference_K",
+        "shares",
+        "stages",
+        "drain_route",
+        "existing_area_factor",
+    ]
+    for curve in told["curves"]:
+        assert curve["label"] in answer.out
+        built = [npv for npv in curve["npv"] if npv is not None]
+        assert curve["best_npv"] == max(built)
 
 
 # --- wrong cases -------------------------------------------------------------------------------------------

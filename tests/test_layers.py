@@ -15,14 +15,15 @@ LONGEST_MODULE = 330  # lines
 _FLOORS = """
     errors numerics workers
     case.words case.kinds case.fields case.plant case.money case.model case.hours case.paths case.consistency
-    case.doubts case.archive case.book_layout case.sheets case.load
+    case.doubts case.archive case.sheet_parts case.sheets case.book_layout case.book_hours case.book_rows
+    case.book case.load
     steam steam_fits
     cycle.condensers cycle.turbine cycle.plant cycle.feedwater cycle.stages cycle.shells cycle.energy
     cycle.task cycle.sliding cycle.passes cycle.solve cycle.calibrate cycle.design cycle.limits cycle.balance
     demand operate year sizing
     correlations published_costs item_money capex
     prices timeline cash_flow measures emissions
-    trade chain moves sensitivity levers sampling response draws checks study
+    trade chain moves sensitivity levers sampling response draws grid optimum checks study
     workbook
     tables output results files starting cli __main__
 """

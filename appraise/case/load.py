@@ -9,13 +9,16 @@ from __future__ import annotations
 import hashlib
 import re
 import tomllib
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
 from pydantic import ValidationError
 
+from appraise.case.archive import LARGEST_BOOK, WORKBOOK_SUFFIXES, is_book
+from appraise.case.book import BookCase
+from appraise.case.book_layout import HOURS
 from appraise.case.consistency import Found, contradictions, hours_contradictions
 from appraise.case.doubts import doubts_of
 from appraise.case.fields import Table
@@ -26,13 +29,7 @@ from appraise.case.paths import positions
 from appraise.case.words import shown
 from appraise.errors import CaseError, FileProblem, Problem
 
-__all__ = ["NOT_YET", "Case", "LoadedCase", "case_from", "doubts_of", "load_case"]
-
-# What may be said already but has no effect yet: path and the value that asks for nothing.
-NOT_YET: tuple[tuple[str, object], ...] = (
-    ("draws.number", 0),
-    ("drivers.*.distribution", None),
-)
+__all__ = ["Case", "LoadedCase", "case_from", "doubts_of", "load_case"]
 
 _LARGEST_CASE = 5_000_000  # bytes
 _LARGEST_HOURS = 200_000_000
@@ -61,27 +58,31 @@ def case_from(data: Mapping[str, Any]) -> Case:
 
 
 def load_case(path: Path | str) -> LoadedCase:
-    """Read a case file and the series it names.
+    """Read a case and its series, from a case file or from a workbook that was written for one.
 
+    A workbook's `hours_path` is itself where it holds the rows of the series; then `hours_sha256` is that of
+    these rows as comma-separated text. Its `case_sha256` is that of `data`, as `BookCase` has it.
     Raises FileProblem where the case cannot be read at all, CaseError with every fault of case and hours.
     """
     path = Path(path)
-    content = _content(path, _LARGEST_CASE)
-    data = _parsed(content, path)
+    content = _content(path, LARGEST_BOOK if path.suffix.lower() in WORKBOOK_SUFFIXES else _LARGEST_CASE)
+    book = BookCase(content, path) if is_book(content, path) else None
+    data = _parsed(content, path) if book is None else book.data
     case, problems = _read(data)
     series = _series(data)
-    hours_path = path.parent / series if series else path
-    hours_content = b""
-    hours = None
+    hours_path, hours_content, hours = path, b"", None
     if series:
         try:
-            hours_content = _content(hours_path, _LARGEST_HOURS)
-            hours = parsed_hours(hours_content, hours_path.name, needed_of(data))
+            hours_path, hours_content = _series_content(path, series, book)
+            name = hours_path.name if hours_path != path else HOURS
+            hours = parsed_hours(hours_content, name, needed_of(data))
             problems += _hours_problems(case, hours)
         except FileProblem as error:
             problems.append(Problem("year.series", f"{shown(series)} given; {error}"))
         except CaseError as error:
             problems += error.problems
+    if book is not None:
+        problems = book.located(problems)
     if problems or case is None or hours is None:
         raise CaseError(problems)
     return LoadedCase(
@@ -91,7 +92,7 @@ def load_case(path: Path | str) -> LoadedCase:
         path=path,
         hours_path=hours_path,
         data=data,
-        case_sha256=hashlib.sha256(content).hexdigest(),
+        case_sha256=hashlib.sha256(content).hexdigest() if book is None else book.sha256,
         hours_sha256=hashlib.sha256(hours_content).hexdigest(),
     )
 
@@ -107,8 +108,6 @@ def _read(data: Mapping[str, Any]) -> tuple[Case | None, list[Problem]]:
         faults = error.errors(include_url=False, include_context=False, include_input=False)
         problems = [Problem(dotted(fault["loc"], data), fault["msg"]) for fault in faults]
     problems += contradictions(Found(tables, data))
-    faulty = {problem.where for problem in problems}
-    problems += [problem for problem in _not_yet(data) if problem.where not in faulty]
     return case, problems
 
 
@@ -126,37 +125,6 @@ def dotted(place: Place, data: object) -> str:
             text += f".{name}" if text else name
             node = node.get(part) if isinstance(node, Mapping) else None
     return text
-
-
-def _not_yet(data: Mapping[str, Any]) -> Iterator[Problem]:
-    """What the data asks for that has no effect yet, and drivers that would."""
-    for path, idle in NOT_YET:
-        pattern = re.escape(path).replace(r"\*", r"[^.]+") + r"(\..*)?"
-        for place, driven in _reached(data, ["drivers", "*", "path"], ()):
-            if isinstance(driven, str) and re.fullmatch(pattern, driven):
-                yield Problem(dotted(place, data), f"{shown(driven)} given; not available yet")
-        for place, value in _reached(data, path.split("."), ()):
-            if not _is_idle(value, idle):
-                allowed = "leave it out" if idle is None else f"allowed for now: {shown(idle)}"
-                yield Problem(dotted(place, data), f"not available yet; {allowed}")
-
-
-def _reached(node: Any, way: Sequence[str], place: Place) -> Iterator[tuple[Place, Any]]:
-    """Every place and value that the data has on a way, "*" being every table of a list."""
-    if not way:
-        yield place, node
-    elif way[0] == "*":
-        for index, inner in enumerate(node if isinstance(node, list | tuple) else ()):
-            yield from _reached(inner, way[1:], (*place, index))
-    elif isinstance(node, Mapping) and way[0] in node:
-        yield from _reached(node[way[0]], way[1:], (*place, way[0]))
-
-
-def _is_idle(value: Any, idle: object) -> bool:
-    """Whether a value asks for nothing; a curve does where it is the same everywhere."""
-    if isinstance(value, Mapping) and isinstance(value.get("value"), list | tuple):
-        return all(element == idle for element in value["value"])
-    return bool(value == idle)
 
 
 def needed_of(data: Mapping[str, Any]) -> Needed:
@@ -180,6 +148,26 @@ def _series(data: Mapping[str, Any]) -> str:
     year = data.get("year")
     series = year.get("series") if isinstance(year, Mapping) else None
     return series if isinstance(series, str) and series.strip() and "\0" not in series else ""
+
+
+def _series_content(path: Path, series: str, book: BookCase | None) -> tuple[Path, bytes]:
+    """Where the series of a case is, and its bytes: a CSV file, or the rows that a workbook holds."""
+    if book is None:
+        return path.parent / series, _content(path.parent / series, _LARGEST_HOURS)
+    if book.hours_csv is not None:
+        return path, book.hours_csv
+    tried = book.series_places(series, path.parent)
+    return book.right_series(
+        tried, {place: _content(place, _LARGEST_HOURS) for place in tried if _is_file(place)}
+    )
+
+
+def _is_file(path: Path) -> bool:
+    """Whether there is a file; a name that no file can have counts as none."""
+    try:
+        return path.is_file()
+    except OSError:
+        return False
 
 
 def _hours_problems(case: Case | None, hours: Hours) -> Iterator[Problem]:
@@ -207,8 +195,6 @@ def _content(path: Path, largest: int) -> bytes:
 
 def _parsed(content: bytes, path: Path) -> dict[str, Any]:
     """The tables of a TOML file. Raises CaseError at the line and column where it is none."""
-    if content.startswith(b"PK\x03\x04"):
-        raise FileProblem(f"{path}: a workbook as the case is not available yet; allowed: a TOML file")
     try:
         text = content.decode("utf-8-sig")
     except UnicodeDecodeError as error:

@@ -7,8 +7,8 @@ from dataclasses import dataclass, fields
 CASH_FLOW = "Cash flow"
 
 MEASURES_TOP = 4
-CHART_TOP = 25
-CALENDAR_TOP = 45
+CALENDAR_TOP = 25  # the measures stand above, beside them the chart
+ROW_POINTS = 12.75  # of a row on this sheet, so that two options fit on a printed page
 
 
 @dataclass(frozen=True, slots=True)

@@ -8,8 +8,9 @@ from math import ceil
 from typing import TYPE_CHECKING
 
 from appraise.capex import OptionCapital, estimate_class
-from appraise.case.load import Case
 from appraise.workbook.capex_items import AMOUNT, HIGH, LAST, LOW, Rows, put_blocks, put_factors, section
+from appraise.workbook.capex_sizes import TITLE as SIZES_TITLE
+from appraise.workbook.capex_sizes import put_sizes
 from appraise.workbook.cells import LABEL, TOTAL, UNIT, YEAR_ZERO, Page, Sheet, area, ref
 from appraise.workbook.charts import Axis, Series, bar_chart
 from appraise.workbook.naming import Timeline, input_name, name_of
@@ -18,17 +19,17 @@ if TYPE_CHECKING:
     from appraise.study import Study
 
 TITLE = "Capex"
-WIDTHS = (40.0, 12.0) + (12.0,) * (LAST - 2)
+WIDTHS = (44.0, 12.0) + (12.0,) * (LAST - 2)
 TOP = 4
 FIRST_OPTION = TOTAL
 CHART_SERIES = 6  # as many as differ in look; the smaller items are taken together
 CHART_CM = (15.0, 12.0)
 HEADING_CHARACTERS, HEADING_POINTS = 11, 14.0  # of a line in the heading of an option
-PAGE_ROWS = 42  # as many as surely fit on a printed page
+PAGE_ROWS = 44  # as many as surely fit on a printed page
 
 
 def capex_sheet(study: Study) -> Sheet:
-    """Capital of all options in money of the price year."""
+    """Capital of all options in money of the price year, and what set the sizes that were bought."""
     return _Capex(study).sheet()
 
 
@@ -36,7 +37,7 @@ class _Capex:
     """The page, and the first rows of its parts from the top down."""
 
     def __init__(self, study: Study) -> None:
-        self.case: Case = study.case
+        self.study, self.case = study, study.case
         self.capital: Sequence[OptionCapital] = study.capital
         self.time = Timeline.of(study.case)
         self.page = Page(TITLE, "live")
@@ -52,6 +53,7 @@ class _Capex:
         self.charted = self._charted()
         detail = self.chart_data + (len(self.charted) + 3 if self._grouped else 0)
         self.rows = Rows.of(self.case, self.capital, detail)
+        self.ends = [self.rows.end]  # first rows of the parts below the options' blocks
 
     def sheet(self) -> Sheet:
         """Put everything on the page."""
@@ -68,7 +70,7 @@ class _Capex:
         self._spend()
         put_factors(page, self.case, self.capital, self.rows)
         put_blocks(page, self.case, self.capital, self.rows)
-        self._sources()
+        self._sizes(self._sources())
         page.freeze(TOP, UNIT)
         page.printed(breaks_after=self._breaks())
         return page.finish()
@@ -76,8 +78,7 @@ class _Capex:
     def _breaks(self) -> list[int]:
         """Rows after which a page ends: before the detail, and before a block that would be torn."""
         breaks = [self.chart_data - 1]
-        parts = [*self.rows.blocks, self.rows.end, self.rows.end + len(self.items) + 4]
-        for top, end in pairwise(parts):
+        for top, end in pairwise([*self.rows.blocks, *self.ends]):
             if end - breaks[-1] > PAGE_ROWS:
                 breaks.append(top - 1)
         return breaks
@@ -217,7 +218,7 @@ class _Capex:
                 series,
                 (TITLE, area(TOP + 1, FIRST_OPTION, TOP + 1, self.last_option)),
                 x="",
-                y=Axis(self.unit, "#,##0"),
+                y=Axis(f"thousand {self.unit}", "#,##0,"),
                 alt=f"Stacked bars of capital by item, one bar for each option. Totals: {told}.",
                 anchor=ref(TOP + 2, self.last_option + 2),
                 size_cm=CHART_CM,
@@ -275,7 +276,8 @@ class _Capex:
 
     # -- sources and doubts
 
-    def _sources(self) -> None:
+    def _sources(self) -> int:
+        """Where every cost comes from, and what is doubtful; returns the first free row."""
         page, top = self.page, self.rows.end
         section(page, top, "Where the items come from")
         costs = {cost.key: cost for one in self.capital for cost in one.items}
@@ -297,3 +299,13 @@ class _Capex:
         lines = list(doubts) or ["Nothing lies outside the range of its correlation or is very old."]
         for row, text in enumerate(lines, top + 1):
             page.paragraph(row, LABEL, LAST, text, "note_wrap")
+        self.ends.append(top + len(lines) + 2)
+        return self.ends[-1]
+
+    # -- sizes
+
+    def _sizes(self, row: int) -> None:
+        """What was sized, and by which hour or the design point."""
+        if any(one.stages for one in self.study.physics.sizes):
+            section(self.page, row, SIZES_TITLE)
+            self.ends.append(put_sizes(self.page, row + 1, self.study))

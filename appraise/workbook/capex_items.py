@@ -33,15 +33,15 @@ FACTOR_HEADINGS = (
     "basis",
     "money of year",
     "currency",
-    "place in the index",
-    "weight of the next",
-    "index",
+    "row in the index table",
+    "weight of the next row",
+    "price index",
     "index factor",
     "exchange rate",
     "location factor",
     "all factors",
-    "low",
-    "high",
+    "low end",
+    "high end",
 )
 BLOCK_HEADINGS = (
     "item",
@@ -51,8 +51,8 @@ BLOCK_HEADINGS = (
     "all factors",
     "number",
     "cost",
-    "low",
-    "high",
+    "low end",
+    "high end",
     "how it came about",
 )
 

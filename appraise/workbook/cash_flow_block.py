@@ -22,7 +22,7 @@ if TYPE_CHECKING:
 ENERGIES = ("power", "weighted_power", "premium", "fuel", "peak_fuel")
 ENERGY_LABELS = (
     "Extra power",
-    "Extra power, each hour by its price over the mean",
+    "Extra power, weighted by price over mean",
     "Extra power that earns the premium",
     "Extra fuel",
     "Extra fuel of the peak boilers",
@@ -30,7 +30,7 @@ ENERGY_LABELS = (
 LINE_LABELS = (
     "Capital",
     "Grant",
-    "Tie-in: margin lost while the plant stands",
+    "Tie-in: margin lost while it stands",
     "Power",
     "Premium",
     "Fuel",
@@ -45,10 +45,14 @@ LINE_LABELS = (
 )
 
 
-class Block:
-    """Rows of one option from `top` on; `next_row` is the first free one below."""
+HEIGHT = 2 + len(ENERGIES) + len(LINE_NAMES) + 8 + 1  # rows of a block, the free one below it included
+MARKS = 5  # helper rows of an option
 
-    def __init__(self, study: Study, page: Page, option: int, top: int) -> None:
+
+class Block:
+    """Rows of one option from `top` on, `HEIGHT` of them; its helper rows begin in row `marks`."""
+
+    def __init__(self, study: Study, page: Page, option: int, top: int, marks: int) -> None:
         self.study, self.page, self.option, self.top = study, page, option, top
         self.case, self.time = study.case, Timeline.of(study.case)
         self.key, self.name = study.case.options[option].key, study.case.options[option].name
@@ -58,8 +62,8 @@ class Block:
         after = self.line_row + len(LINE_NAMES)
         self.net, self.cumulative, self.discounted, self.cumulative_discounted = range(after, after + 4)
         self.book, self.depreciation, self.taxable, self.fixed_value = range(after + 4, after + 8)
-        self.sign, self.changes, self.simple, self.discount_payback = range(after + 8, after + 12)
-        self.next_row = after + 13
+        self.marks = marks
+        self.sign, self.changes, self.simple, self.discount_payback = range(marks + 1, marks + 5)
         self.years = [column(year_column(t)) for t in range(self.time.number)]
 
     def line(self, name: str) -> int:
@@ -91,7 +95,7 @@ class Block:
         text: Callable[[str], str],
         expect: Sequence[object] | Array,
         *,
-        style: str = "money",
+        style: str = "thousand",
         name: str = "",
         total: str = "",
         total_expect: object = 0.0,
@@ -109,7 +113,7 @@ class Block:
         page.put(top, LABEL, f"{self.name} against the baseline, chosen scenario", "section")
         page.row_of_formulas(
             top + 1,
-            "Money in is positive, money out negative",
+            "Money in +, money out −; in thousands",
             "unit",
             lambda c: f"={c}${ROWS.calendar_year}",
             self.time.calendar,
@@ -118,7 +122,7 @@ class Block:
             unit_style="heading",
         )
         page.put(top + 1, TOTAL, "present value (MWh: sum)", "heading")
-        page.height(top + 1, 30)
+        page.height(top + 1, 28)
 
     def _energies(self) -> None:
         increment = self.flow.increment
@@ -198,7 +202,7 @@ class Block:
             currency,
             lambda c: f"=SUM({c}{first}:{c}{last})",
             flow.net,
-            style="money total",
+            style="thousand total",
             name=name_of("net", self.key),
             total=self._present(self.net),
             total_expect=float(flow.npv),
@@ -247,7 +251,7 @@ class Block:
             TOTAL,
             f"=-SUMPRODUCT(({capital}+{grant}*IF(in_finance_grant_reduces_depreciation,1,0))/deflator)",
             spent - granted,
-            "money",
+            "thousand",
         )
         self.row(
             self.depreciation,
@@ -265,7 +269,7 @@ class Block:
             flow.taxable,
             name=name_of("taxable", self.key),
         )
-        page.put(self.fixed_value, LABEL, "Present value, after tax, of what no price touches")
+        page.put(self.fixed_value, LABEL, "Present value after tax, no price in it")
         page.put(self.fixed_value, TOTAL - 1, currency, "unit")
         page.formula(
             self.fixed_value,
@@ -273,7 +277,7 @@ class Block:
             f"=C{self.line('capital')}+C{self.line('grant')}+{TAX_LEFT}*(C{self.line('fixed_om')}+C{self.line('residual')})"
             f"+in_finance_tax_rate*SUMPRODUCT({time.row(self.depreciation)},deflator,discount_factor)",
             self.price_independent(),
-            "money",
+            "thousand",
             name=name_of("fixed_value", self.key),
         )
 

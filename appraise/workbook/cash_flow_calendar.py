@@ -143,7 +143,7 @@ class Calendar:
         )
         self.row(
             r.value_weight,
-            "Present value of 1 of price-year money in operation",
+            "Present value of 1 paid in operation",
             "–",
             lambda c: f"={c}{r.operating}*{c}{r.basis_factor}*{c}{r.discount_factor}",
             self.worth,
@@ -209,10 +209,10 @@ class Calendar:
             self.case.study.currency,
             lambda c: f"={c}{r.operating}*({due.format(k=f'{c}{r.operating_year}')})",
             self.time.operating(amounts),
-            "money",
+            "thousand",
             "overhauls",
         )
-        self.total(r.overhauls, float(sum(amounts)), "money")
+        self.total(r.overhauls, float(sum(amounts)), "thousand")
 
     # -- single figures
 
@@ -241,7 +241,7 @@ class Calendar:
         )
         last = time.spend - 1
         self.single(
-            "Present value of 1 of price-year money in the last spend",
+            "Present value of 1 in the last spend",
             "–",
             "=INDEX(basis_factor,1,spend_years)*INDEX(discount_factor,1,spend_years)",
             float(flow.inflation_factor[last] * flow.deflator[last] * flow.discount_factor[last]),
@@ -249,9 +249,7 @@ class Calendar:
             "tie_in_weight",
             "the tie-in falls in that year",
         )
-        self.page.put(
-            self.single_row, LABEL, "Taken as a residue of rounding, share of the greatest flow", "label"
-        )
+        self.page.put(self.single_row, LABEL, "Residue of rounding, share of the flow", "label")
         self.page.put(self.single_row, UNIT, "–", "unit")
-        self.page.put(self.single_row, TOTAL, ROUNDING, "general", name="rounding_share")
+        self.page.put(self.single_row, TOTAL, ROUNDING, "tiny", name="rounding_share")
         self.single_row += 1

@@ -10,11 +10,12 @@ from appraise.measures import ROUNDING, without_rounding
 from appraise.numerics import Array
 from appraise.workbook.calendar_rows import ROWS
 from appraise.workbook.cash_flow_block import Block
-from appraise.workbook.cells import column, year_column
+from appraise.workbook.cells import LABEL, column, year_column
 
 
 def write_marks(block: Block) -> None:
-    """Signs and their changes, then both paybacks."""
+    """The option's name, signs and their changes, then both paybacks."""
+    block.page.put(block.marks, LABEL, block.name, "text bold")
     _signs(block)
     flow = block.flow
     for row, running, source, flows, label in (

@@ -51,17 +51,20 @@ class MeasuresTable:
         page.put(MEASURES_TOP, LABEL, title, "section")
         page.put(row, LABEL, "Measure", "heading_left")
         page.put(row, UNIT, "unit", "heading")
-        page.height(row, 70)
+        page.put(row + 1, LABEL, "Money in thousands, prices as they are", "heading_left")
+        page.put(row + 1, UNIT, None, "heading")
+        page.height(row, 44)
         for number, block in enumerate(self.blocks):
             col = TOTAL + 2 * number
-            page.put(row, col, f"{block.name}: live", "heading")
-            page.put(row, col + 1, "as run", "heading")
-            for offset, measure in enumerate(self._measures(block), 1):
+            page.put(row, col, block.name, "heading")
+            page.merge(row, col, row, col + 1)
+            page.headings(row + 1, ["live", "as run"], first=col)
+            for offset, measure in enumerate(self._measures(block), 2):
                 if number == 0:
                     page.put(row + offset, LABEL, measure.label, "label")
                     page.put(row + offset, UNIT, measure.unit, "unit")
                 self._put(row + offset, col, block, measure)
-        return row + len(self._measures(self.blocks[0])) + 1 if self.blocks else row + 1
+        return row + len(self._measures(self.blocks[0])) + 2 if self.blocks else row + 2
 
     def _put(self, row: int, col: int, block: Block, measure: _Measure) -> None:
         """The live cell and, beside it, what the run has."""
@@ -92,7 +95,7 @@ class MeasuresTable:
         rate = run.irr if run.irr is not None and run.irr > LOWEST_RATE else None
         spent = f"(C{block.line('capital')}+C{block.line('grant')})"
         return [
-            _Measure("npv", "Net present value", self.currency, "money bold", f"=C{block.net}", run.npv),
+            _Measure("npv", "Net present value", self.currency, "thousand bold", f"=C{block.net}", run.npv),
             _Measure(
                 "irr",
                 "Internal rate of return, above −50 %",
@@ -123,7 +126,7 @@ class MeasuresTable:
             ),
             _Measure(
                 "profitability",
-                "Profitability index, 1 + NPV per capital less grant",
+                "Profitability: 1 + NPV / (capital − grant)",
                 "–",
                 "number2",
                 f'=IF({spent}<0,1-{npv}/{spent},"{NOTHING}")',
@@ -203,7 +206,7 @@ class MeasuresTable:
             measures.append(
                 _Measure(
                     f"even_{kind}",
-                    f"Break-even {label} price in the first year, whole path scaled",
+                    f"Break-even {label} price, path scaled",
                     f"{self.currency}/{unit}",
                     "number2",
                     f'=IF({line}=0,"{NOTHING}",INDEX(chosen__{kind},1,spend_years+1)*(1-{npv}/({TAX_LEFT}*{line})))',
@@ -222,9 +225,9 @@ class MeasuresTable:
         return [
             _Measure(
                 "extra_capital",
-                "Capital above the baseline's, money of the price year",
+                "Capital above the baseline's, price-year money",
                 self.currency,
-                "money",
+                "thousand",
                 f"={increment}",
                 float(block.flow.capital),
             ),
@@ -232,15 +235,15 @@ class MeasuresTable:
                 "largest_capital",
                 "Largest capital of the option without a loss",
                 self.currency,
-                "money",
+                "thousand",
                 f'=IF(OR(SUMPRODUCT(ABS({net}))=0,unit_of_capital>=0),"{NOTHING}",{total}-{npv}/unit_of_capital)',
                 NOTHING if run.largest_capex is None else run.largest_capex,
             ),
             _Measure(
                 "first_gain",
-                "Gain of the first year of operation, before tax",
+                "Gain of the first year, before tax",
                 self.currency,
-                "money",
+                "thousand",
                 f"=SUM(INDEX({lines},0,spend_years+1))",
                 gain,
             ),

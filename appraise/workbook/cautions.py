@@ -17,7 +17,7 @@ from appraise.workbook.side_by_side import LINE_POINTS
 TITLE = "Cautions"
 COLUMNS = 8
 WIDTH = 14.0
-LINE_LENGTH = 1.15 * COLUMNS * WIDTH  # characters of running text
+LINE_LENGTH = 1.25 * COLUMNS * WIDTH  # characters of running text
 
 
 def cautions_sheet(study: Study) -> Sheet:

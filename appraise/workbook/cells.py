@@ -34,7 +34,8 @@ if TYPE_CHECKING:
     from appraise.workbook.charts import Chart
 
 DEFAULT_WIDTH = 9.0  # characters
-WIDTH_POINTS = 10.5  # a column is measured in characters of 11 points; running text is a little narrower
+DEFAULT_HEIGHT = 15.0  # points
+WIDTH_POINTS = 11.8  # a column is measured in characters of 11 points; running text is a little narrower
 LINE_SPACING = 1.35
 
 __all__ = [
@@ -215,6 +216,10 @@ class Page:
     def height(self, row: int, points: float) -> None:
         """Height of a row in points."""
         self._heights[row] = points
+
+    def points(self, row: int) -> float:
+        """Height of a row, as set so far."""
+        return self._heights.get(row, DEFAULT_HEIGHT)
 
     def freeze(self, row: int, col: int) -> None:
         """Rows above and columns left of this cell stay in sight."""

@@ -44,7 +44,10 @@ class Series:
 
 @dataclass(frozen=True, slots=True)
 class Axis:
-    """An axis: title with unit, number format, and limits where they are not left to the program."""
+    """An axis: title with unit, number format, and limits where they are not left to the program.
+
+    step : between ticks; of categories, every how many are named
+    """
 
     title: str
     number_format: str = "#,##0"
@@ -63,6 +66,7 @@ class Chart:
     alt : what the chart shows, in a sentence or two, for screen readers
     anchor : cell under the upper left corner; size_cm : width and height
     labels : number format of the values written at bars, "" for none; gap : between bars, % of a bar
+    points : size of its text, that of the title 2 more; larger where a page is printed much reduced
     """
 
     kind: Kind
@@ -80,6 +84,7 @@ class Chart:
     labels: str = ""
     legend: bool = True
     gap: int = 60
+    points: float = 9.0
 
     def __post_init__(self) -> None:
         if not self.series:

@@ -11,7 +11,7 @@ from appraise.workbook.side_by_side import LINE_POINTS, residual
 
 TITLE = "Checks"
 OK, LOOK = "OK", "LOOK"
-WIDTHS = (46.0, 10.0, 12.0, 12.0, 2.0, 84.0)
+WIDTHS = (44.0, 10.0, 12.0, 12.0, 2.0, 92.0)
 _HEADS = ("Check", "Result", "Value", "Limit", "", "What it says")
 FIRST_ROW = 9
 
@@ -53,31 +53,32 @@ def checks_sheet(study: Study) -> Sheet:
 
 
 def _check_row(page: Page, row: int, check: Check) -> None:
-    page.put(row, 1, check.name, "label_wrap")
+    one_line = _lines(check.name, WIDTHS[0]) == _lines(check.message, WIDTHS[5]) == 1
+    page.put(row, 1, check.name, "label" if one_line else "label_wrap")
     page.put(row, 2, OK if check.passed else LOOK, "text_centre")
     for col, value in ((3, check.value), (4, check.limit)):
         if value is None:
             page.put(row, col, "–", "text_right as run")
         else:
             kind = kind_of(value)
-            page.put(row, col, residual(value) if kind == "general" else value, f"{kind} as run")
-    page.put(row, 6, _sentence(check.message), "text_wrap")
+            page.put(row, col, residual(value) if kind == "tiny" else value, f"{kind} as run")
+    page.put(row, 6, _sentence(check.message), "text" if one_line else "text_wrap")
     lines = max(_lines(check.name, WIDTHS[0]), _lines(check.message, WIDTHS[5]))
     page.height(row, lines * LINE_POINTS + 3.0)
 
 
 def kind_of(value: float) -> str:
-    """Kind of number that shows a value of any size readably; tiny residuals as the program sees fit."""
+    """Kind of number that shows a value of any size readably."""
     size = abs(value)
     if value == int(value):
         return "integer"
     if size < 1e-3:
-        return "general"
+        return "tiny"
     return "number3" if size < 10 else "number2"
 
 
 def _lines(text: str, width: float) -> int:
-    return max(1, ceil(len(text) / (1.15 * width)))
+    return max(1, ceil(len(text) / (1.25 * width)))
 
 
 def _sentence(text: str) -> str:

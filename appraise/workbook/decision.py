@@ -6,14 +6,14 @@ from collections.abc import Callable, Sequence
 from typing import TYPE_CHECKING
 
 from appraise.measures import payback
-from appraise.workbook.calendar_rows import CASH_FLOW, ROWS
-from appraise.workbook.cash_flow import cumulative_rows
 from appraise.workbook.cash_flow_measures import NOTHING, payback_words
 from appraise.workbook.cells import LABEL, TOTAL, UNIT, Page, Sheet, area, ref
-from appraise.workbook.charts import Axis, Series, bar_chart, line_chart
+from appraise.workbook.decision_charts import CHART_ROWS, LAST_WIDTH, OPTION_WIDTH, decision_charts
 from appraise.workbook.decision_words import (
+    BASIS_FORMULA,
     Best,
     Cells,
+    basis,
     leaning,
     question,
     reason,
@@ -22,15 +22,13 @@ from appraise.workbook.decision_words import (
     verdict_formula,
 )
 from appraise.workbook.naming import CHOSEN_SCENARIO, Timeline, name_of
-from appraise.workbook.scenarios import TITLE as SCENARIOS
-from appraise.workbook.scenarios import matrix_cells
 
 if TYPE_CHECKING:
     from appraise.study import Study
 
 TITLE = "Decision"
 CHOSEN_ROW, VERDICT_ROW, TABLE_TOP = 6, 9, 13
-CHART_ROWS = 17
+PER_MILLE = 1e3  # MWh per MWh is shown as kWh per MWh
 OUTDATED = "Technical inputs were changed: run again; heat balances, hours and sizes are out of date."
 IN_STEP = "All technical inputs are those of the run."
 CAUTION = (
@@ -63,7 +61,7 @@ class _Decision:
     def sheet(self) -> Sheet:
         """Put everything on the page. The words come last: they need the places of the table."""
         page = self.page
-        page.width([46, 12] + [17.0] * max(len(self.options), 3) + [13.0])
+        page.width([46, 12] + [OPTION_WIDTH] * max(len(self.options), 3) + [LAST_WIDTH])
         page.head(self.case.study.title)
         self._question()
         self._options_table()
@@ -71,8 +69,9 @@ class _Decision:
         self._status()
         self._charts()
         page.paragraph(self.row, LABEL, self._wide(), CAUTION, "note_wrap")
+        self.best_row = self.row + 2
         self._words()
-        page.printed(landscape=False, pages_tall=1)
+        page.printed(landscape=False, pages_tall=1, area=area(1, LABEL, self.row, self._wide()))
         return page.finish()
 
     def _wide(self) -> int:
@@ -94,7 +93,7 @@ class _Decision:
             TOTAL + 1,
             "=INDEX(scenario_titles,chosen_index,1)",
             self.run.prices.title,
-            "text",
+            "label_indent",
             "chosen_title",
         )
 
@@ -149,19 +148,19 @@ class _Decision:
         base_co2 = figures[self.base].co2_t
         self._heading("Options against the plant as it is")
         self._as_run("Extra power, first year", "MWh", "integer", [f.extra_power_MWh for f in figures])
-        points = [balance.extra_power_per_heat for balance in self.study.balances]
-        self._as_run("Extra power per heat, design point", "MWh/MWh", "number4", points)
+        points = [PER_MILLE * balance.extra_power_per_heat for balance in self.study.balances]
+        self._as_run("Extra power per heat, design point", "kWh/MWh", "number1", points)
+        ratios = [f.extra_power_per_heat for f in figures]
+        ratios = [None if ratio is None else PER_MILLE * ratio for ratio in ratios]
+        self._as_run("Extra power per heat, year", "kWh/MWh", "number1", ratios)
         self._as_run(
-            "Extra power per heat, year", "MWh/MWh", "number4", [f.extra_power_per_heat for f in figures]
-        )
-        self._as_run(
-            "Power from extra fuel", "MWh/MWh", "number2", [f.incremental_efficiency for f in figures]
+            "Extra power per extra fuel", "MWh/MWh", "number2", [f.incremental_efficiency for f in figures]
         )
         self._as_run(
             "Price the extra power captures", f"{money}/MWh", "number1", [f.capture_price for f in figures]
         )
-        self._as_run("  over the year's mean price", "", "percent0", [f.capture_ratio for f in figures])
-        self._as_run("Change of stack CO2", "t/a", "integer", [f.co2_t - base_co2 for f in figures])
+        self._as_run("  of the year's mean price", "%", "percent0", [f.capture_ratio for f in figures])
+        self._as_run("Change of CO₂ from the stacks", "t/a", "integer", [f.co2_t - base_co2 for f in figures])
         flows, spend = self.run.flows, Timeline.of(self.case).spend
         self._live("extra_capital", "Capital", money, "money", lambda i: float(flows[i].capital), 0)
         self._live(
@@ -181,7 +180,7 @@ class _Decision:
             back = payback(flows[index].net, spend)
             return payback_words(back.note) if back.years is None else back.years
 
-        self._live("payback", "Payback", "years", "number1", years, "–")
+        self._live("payback", "Payback, counted from the start of operation", "years", "number1", years, "–")
         compared = self.study.comparison
         self._live(
             "worst",
@@ -193,7 +192,7 @@ class _Decision:
         )
         self._live(
             "largest_regret",
-            "Largest regret over all scenarios",
+            "Largest regret: cost against a scenario's best",
             money,
             "money",
             lambda i: float(compared.largest_regret[i]),
@@ -203,6 +202,12 @@ class _Decision:
         self.page.highlight(
             self._cells(self.rows["worst"]), f"={ref(self.rows['worst'], TOTAL)}<0", "negative"
         )
+        self._basis()
+
+    def _basis(self) -> None:
+        """What the money above rests on, live."""
+        self.page.formula(self.row, LABEL, BASIS_FORMULA, basis(self.study), "note")
+        self.row += 1
 
     def _break_evens(self) -> None:
         """Where the net present value of each option becomes zero, beside what is planned."""
@@ -267,43 +272,12 @@ class _Decision:
             f"{passed} {words[0]}{total}{words[1]}",
             "text",
         )
-        self.best_row = self.row + 2
-        self.row += 4
-
-    # -- charts
+        self.row += 3
 
     def _charts(self) -> None:
-        if not self.others:
-            return
-        page, time, money = self.page, Timeline.of(self.case), self.currency
-        names = [option.name for option in self.options]
-        rows = cumulative_rows(self.study)
-        page.chart(
-            line_chart(
-                "Net flow, running sum, chosen scenario",
-                [Series(names[i], CASH_FLOW, time.row(rows[self.options[i].key])) for i in self.others],
-                (CASH_FLOW, time.row(ROWS.calendar_year)),
-                x="year",
-                y=Axis(money, "#,##0"),
-                alt=f"Running sum of the net flow of each option, {money}, by year.",
-                anchor=ref(self.row, LABEL),
-                size_cm=(13.5, 8.4),
-            )
-        )
-        titles, columns = matrix_cells(self.study)
-        page.chart(
-            bar_chart(
-                "Net present value by scenario",
-                [Series(names[i], SCENARIOS, columns[i]) for i in self.others],
-                (SCENARIOS, titles),
-                x="",
-                y=Axis(money, "#,##0"),
-                alt=f"Net present value of each option in each scenario, {money}; the plant as it is is 0.",
-                anchor=ref(self.row, TOTAL + 1),
-                size_cm=(13.5, 8.4),
-            )
-        )
-        self.row += CHART_ROWS + 1
+        for chart in decision_charts(self.study, self.row, self._wide()):
+            self.page.chart(chart)
+            self.row += CHART_ROWS + 1 if chart.kind == "line" else 0
 
     # -- words
 
@@ -314,7 +288,8 @@ class _Decision:
         page.put(VERDICT_ROW - 1, LABEL, "Recommendation", "section")
         for col in range(UNIT, self._wide() + 1):
             page.put(VERDICT_ROW - 1, col, None, "section")
-        page.put(self.best_row, LABEL, "Best in the chosen scenario, counted from the left", "text")
+        words = "Helper, not printed: column of the best option in the chosen scenario"
+        page.put(self.best_row, LABEL, words, "note")
         page.formula(
             self.best_row, TOTAL, f"=MATCH(MAX({npv}),{npv},0)", place + 1, "integer", name="live_best"
         )

@@ -42,6 +42,25 @@ class Best:
     scenario: str
 
 
+BASIS_FORMULA = (
+    '="Present values at "&FIXED(in_finance_discount_rate*100,1)&" % a year, after "'
+    '&FIXED(in_finance_tax_rate*100,1)&" % tax, "'
+    '&IF(in_finance_basis="real","real, in money of "&in_study_price_year,"nominal")'
+    '&". Positive: better than the plant as it is."'
+)
+"""Formula of `basis`."""
+
+
+def basis(study: Study) -> str:
+    """What the present values rest on, and what their sign means."""
+    finance, year = study.case.finance, study.case.study.price_year
+    money = f"real, in money of {year}" if finance.basis == "real" else "nominal"
+    return (
+        f"Present values at {finance.discount_rate * 100.0:,.1f} % a year, after "
+        f"{finance.tax_rate * 100.0:,.1f} % tax, {money}. Positive: better than the plant as it is."
+    )
+
+
 def verdict(best: Best, currency: str) -> str:
     """What to do in the chosen scenario."""
     if best.is_baseline:

@@ -52,6 +52,12 @@ _STAGE_HEADS = (
 )
 
 
+ABBREVIATIONS = (
+    "TTD, terminal temperature difference: steam less water out. "
+    "DCA, drain cooler approach: drain less water in."
+)
+
+
 @dataclass(frozen=True, slots=True)
 class Drawn:
     """A curve with the way it is drawn and, once it is on the sheet, its cells."""
@@ -69,6 +75,7 @@ def diagrams_sheet(study: Study) -> Sheet:
     page = Page(TITLE, "as run")
     page.width([WIDTH] * HALF + [GAP] + [WIDTH] * HALF)
     page.head(TITLE, "All at the design point. The cells behind the charts stand below and are not printed.")
+    page.put(3, 1, ABBREVIATIONS, "note")
     pairs = ceil(len(study.balances) / 2)
     table_rows = max(len(balance.stages) for balance in study.balances) + 2
     pair_rows = 1 + CHART_ROWS + table_rows + 1
@@ -170,7 +177,7 @@ def _expansion_page(page: Page, study: Study, row: int, data_row: int) -> None:
     )
     whole, _ = _put_curves(page, next_row + 1, 1, "Whole cycle", list(_whole_curves(study)), axes)
     chart = scatter_chart(
-        "Whole cycle and saturation dome",
+        "Whole cycle; dots: condensate, feed water",
         whole,
         x=Axis("Entropy, kJ/(kg K)", "0", 0.0, 9.0, 1.0),
         y=Axis("Enthalpy, kJ/kg", "#,##0", 0.0, 4000.0, 500.0),

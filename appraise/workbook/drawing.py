@@ -71,7 +71,7 @@ def native_chart(chart: Chart, sheets: Mapping[str, Sheet]) -> Any:
     made = _MAKERS[chart.kind](chart)
     for order, series in enumerate(chart.series):
         made.series.append(_series(chart, series, order, sheets))
-    made.title = _title(clean_text(chart.title), 1100, bold=True, chart=chart, sheets=sheets)
+    made.title = _title(clean_text(chart.title), chart.points + 2.0, bold=True, chart=chart, sheets=sheets)
     made.width, made.height = chart.size_cm
     made.anchor = chart.anchor
     made.roundedCorners = False
@@ -85,15 +85,15 @@ def native_chart(chart: Chart, sheets: Mapping[str, Sheet]) -> Any:
 def _line(chart: Chart) -> Any:
     made = LineChart(varyColors=False)
     made.grouping = "standard"
-    made.x_axis = _axis(TextAxis(axId=10, crossAx=100), chart.x, "b")
-    made.y_axis = _axis(NumericAxis(axId=100, crossAx=10), chart.y, "l")
+    made.x_axis = _axis(TextAxis(axId=10, crossAx=100), chart.x, "b", chart.points)
+    made.y_axis = _axis(NumericAxis(axId=100, crossAx=10), chart.y, "l", chart.points)
     return made
 
 
 def _scatter(chart: Chart) -> Any:
     made = ScatterChart(varyColors=False, scatterStyle="lineMarker")
-    made.x_axis = _axis(NumericAxis(axId=10, crossAx=100), chart.x, "b")
-    made.y_axis = _axis(NumericAxis(axId=100, crossAx=10), chart.y, "l")
+    made.x_axis = _axis(NumericAxis(axId=10, crossAx=100), chart.x, "b", chart.points)
+    made.y_axis = _axis(NumericAxis(axId=100, crossAx=10), chart.y, "l", chart.points)
     return made
 
 
@@ -103,14 +103,16 @@ def _bars(chart: Chart) -> Any:
     made.type = "bar" if lying else "col"
     made.grouping = "stacked" if chart.stacked else "clustered"
     made.overlap = 100 if chart.stacked or chart.kind == "tornado" else 0
-    made.x_axis = _axis(TextAxis(axId=10, crossAx=100), chart.x, "l" if lying else "b")
-    made.y_axis = _axis(NumericAxis(axId=100, crossAx=10), chart.y, "b" if lying else "l")
+    made.x_axis = _axis(TextAxis(axId=10, crossAx=100), chart.x, "l" if lying else "b", chart.points)
+    if chart.gap:
+        made.x_axis.tickLblSkip = 1  # every bar has its name, however low the chart
+    made.y_axis = _axis(NumericAxis(axId=100, crossAx=10), chart.y, "b" if lying else "l", chart.points)
     if lying:  # lying bars count from below; the first category belongs on top, the numbers at the foot
         made.x_axis.scaling.orientation = "maxMin"
         made.y_axis.crosses = "max"
         made.y_axis.tickLblPos = "nextTo"
     if chart.labels:
-        made.dataLabels = _labels(chart.labels)
+        made.dataLabels = _labels(chart.labels, chart.points - 1.0)
     return made
 
 
@@ -121,8 +123,8 @@ def _duration(chart: Chart) -> Any:
     axis = DateAxis(axId=10, crossAx=100)
     axis.baseTimeUnit = axis.majorTimeUnit = "days"
     axis.auto = False
-    made.x_axis = _axis(axis, chart.x, "b")
-    made.y_axis = _axis(NumericAxis(axId=100, crossAx=10), chart.y, "l")
+    made.x_axis = _axis(axis, chart.x, "b", chart.points)
+    made.y_axis = _axis(NumericAxis(axId=100, crossAx=10), chart.y, "l", chart.points)
     made.y_axis.crossBetween = "midCat"
     return made
 
@@ -130,16 +132,16 @@ def _duration(chart: Chart) -> Any:
 _MAKERS = {"line": _line, "scatter": _scatter, "bar": _bars, "tornado": _bars, "duration": _duration}
 
 
-def _axis(axis: Any, given: Axis, position: str) -> Any:
+def _axis(axis: Any, given: Axis, position: str, points: float) -> Any:
     axis.delete = False
     axis.axPos = position
-    axis.title = _title(clean_text(given.title), 900, upright=position == "l") if given.title else None
+    axis.title = _title(clean_text(given.title), points, upright=position == "l") if given.title else None
     axis.number_format = given.number_format
     axis.numFmt.sourceLinked = False
     axis.majorTickMark, axis.minorTickMark = "out", None
     axis.tickLblPos = "low"
     axis.crosses = "autoZero"
-    axis.txPr = _text_properties(900)
+    axis.txPr = _text_properties(points)
     axis.graphicalProperties = GraphicalProperties(ln=_pen(GREY, 0.75))
     is_scale = isinstance(axis, NumericAxis)
     axis.majorGridlines = ChartLines(spPr=GraphicalProperties(ln=_pen(GRID, 0.5))) if is_scale else None
@@ -148,6 +150,8 @@ def _axis(axis: Any, given: Axis, position: str) -> Any:
         axis.scaling.logBase = 10 if given.log else None
     if type(axis) is not TextAxis:  # an axis of dates is a text axis too, with steps
         axis.majorUnit = given.step
+    elif given.step is not None:
+        axis.tickLblSkip = axis.tickMarkSkip = round(given.step)
     return axis
 
 
@@ -182,7 +186,7 @@ def _paint(made: Any, chart: Chart, series: Series, slot: Slot) -> None:
         made.graphicalProperties = GraphicalProperties(ln=pen)
         made.marker = _marker(symbol if series.markers else "none", colour)
         if series.direct:
-            made.dLbls = _direct_label(len(cells_in(series.values)) - 1, colour)
+            made.dLbls = _direct_label(len(cells_in(series.values)) - 1, colour, chart.points)
         return
     made.graphicalProperties = GraphicalProperties(ln=_pen(colour, 0.75))
     if hatching:
@@ -205,10 +209,10 @@ def _marker(symbol: Any, colour: str) -> Marker:
     return Marker(symbol=symbol, size=7, spPr=GraphicalProperties(solidFill=colour, ln=_pen(colour, 0.75)))
 
 
-def _labels(number_format: str) -> DataLabelList:
+def _labels(number_format: str, points: float) -> DataLabelList:
     return DataLabelList(
         numFmt=number_format,
-        txPr=_text_properties(800),
+        txPr=_text_properties(points),
         showVal=True,
         showLegendKey=False,
         showCatName=False,
@@ -217,7 +221,7 @@ def _labels(number_format: str) -> DataLabelList:
     )
 
 
-def _direct_label(index: int, colour: str) -> DataLabelList:
+def _direct_label(index: int, colour: str, points: float) -> DataLabelList:
     off: dict[str, Any] = {
         "showLegendKey": False,
         "showVal": False,
@@ -225,7 +229,7 @@ def _direct_label(index: int, colour: str) -> DataLabelList:
         "showPercent": False,
     }
     label = DataLabel(
-        idx=index, dLblPos="t", showSerName=True, txPr=_text_properties(900, colour, bold=True), **off
+        idx=index, dLblPos="t", showSerName=True, txPr=_text_properties(points, colour, bold=True), **off
     )
     return DataLabelList(dLbl=[label], showSerName=False, **off)
 
@@ -237,14 +241,14 @@ def _legend(chart: Chart) -> Legend | None:
     legend = Legend()
     legend.position = "b"
     legend.overlay = False
-    legend.txPr = _text_properties(900)
+    legend.txPr = _text_properties(chart.points)
     legend.legendEntry = [LegendEntry(idx=index, delete=True) for index in direct]
     return legend
 
 
 def _title(
     text: str,
-    size: int,
+    points: float,
     *,
     bold: bool = False,
     upright: bool = False,
@@ -252,7 +256,7 @@ def _title(
     sheets: Mapping[str, Sheet] | None = None,
 ) -> Title:
     body = RichTextProperties(rot=-5_400_000, vert="horz") if upright else RichTextProperties()
-    look = _characters(size, SLATE if bold else GREY, bold)
+    look = _characters(points, SLATE if bold else GREY, bold)
     paragraph = ParagraphProperties(defRPr=look)
     if chart is not None and sheets is not None and chart.title_cell:
         linked = Text(strRef=_texts(*chart.title_cell, sheets))
@@ -266,16 +270,16 @@ def _title(
     return Title(tx=Text(rich=rich), overlay=False)
 
 
-def _text_properties(size: int, colour: str = GREY, bold: bool = False) -> RichText:
-    look = _characters(size, colour, bold)
+def _text_properties(points: float, colour: str = GREY, bold: bool = False) -> RichText:
+    look = _characters(points, colour, bold)
     return RichText(
         bodyPr=RichTextProperties(),
         p=[Paragraph(pPr=ParagraphProperties(defRPr=look), r=[], endParaRPr=look)],
     )
 
 
-def _characters(size: int, colour: str, bold: bool) -> CharacterProperties:
-    return CharacterProperties(sz=size, b=bold, solidFill=colour, latin=Font(typeface=FONT))
+def _characters(points: float, colour: str, bold: bool) -> CharacterProperties:
+    return CharacterProperties(sz=round(100 * points), b=bold, solidFill=colour, latin=Font(typeface=FONT))
 
 
 def _pen(colour: str, points: float, dash: Any = "solid") -> LineProperties:

@@ -26,6 +26,13 @@ WIDTH = 13.0
 LAST_COLUMN = UNIT + MOST_COLUMNS
 PER_MILLE = 1e3  # MW per MW is shown as kW per MW
 
+MEANINGS = (
+    "“Extra” is always against the plant as it is, at the same heat to the network. Incremental efficiency "
+    "is extra net power over extra fuel. The ideal gain is that of sixteen stages with the same terminal "
+    "difference: what ever finer steps could still add. TTD, terminal temperature difference: saturation of "
+    "the steam less the water leaving. A dash: no such value, as the quality of steam that is not wet."
+)
+
 _STATE_HEADS = (
     ("Flow", "kg/s", "number3"),
     ("Pressure", "bar", "number3"),
@@ -95,7 +102,7 @@ def _design_point(page: Page, row: int, study: Study) -> int:
 
 def _side_by_side(page: Page, row: int, study: Study) -> int:
     put_section(page, row, "Options side by side", LAST_COLUMN)
-    return put_table(
+    row = put_table(
         page,
         row + 1,
         "At the design point",
@@ -104,6 +111,8 @@ def _side_by_side(page: Page, row: int, study: Study) -> int:
         WIDTH,
         MOST_COLUMNS,
     )
+    page.paragraph(row - 1, LABEL, LAST_COLUMN, MEANINGS, "note_wrap")
+    return row + 1
 
 
 def balance_lines(balances: Sequence[Balance], baseline: int) -> Iterator[Line]:
@@ -150,7 +159,7 @@ def balance_lines(balances: Sequence[Balance], baseline: int) -> Iterator[Line]:
     yield Line(
         "Energy balance, relative residual",
         "",
-        "general",
+        "tiny",
         [residual(balance.closure) for balance in balances],
     )
 

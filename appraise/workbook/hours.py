@@ -9,15 +9,16 @@ from collections.abc import Callable, Iterator
 
 import numpy as np
 
+from appraise.case.book_layout import HASH_OF_FILE, HASH_OF_ROWS, HOURS_HASH_ROW
+from appraise.case.book_layout import HOURS as TITLE
+from appraise.case.book_layout import HOURS_FIRST_ROW as FIRST_ROW
+from appraise.case.book_layout import HOURS_HEADER_ROW as HEADER_ROW
 from appraise.case.hours import Hours
 from appraise.numerics import Array
 from appraise.study import Study
 from appraise.workbook.cells import Page, Sheet, area, column
 
-TITLE = "Hours"
-HEADER_ROW = 5  # the names of the file's columns
 STATISTICS_ROW = 6  # mean, least, greatest
-FIRST_ROW = 9  # of the hours, as in the file
 LAST_COLUMN = 8  # of what is printed
 
 _COLUMNS = ("heat_MW", "outdoor_C", "supply_C", "return_C", "power_price")
@@ -35,7 +36,11 @@ def hours_sheet(study: Study) -> Sheet:
     columns = list(columns_of(study.hours))
     last_column = max(LAST_COLUMN, 1 + len(columns))
     page.width([17.0] + [13.0] * (last_column - 1))
-    page.head("Hours of the year", "Time is the start of the hour, local standard time.")
+    money = study.case.study.currency
+    page.head(
+        "Hours of the year",
+        f"Time is the start of the hour, local standard time; prices are in {money}/MWh.",
+    )
     hours, loaded = study.hours, study.loaded
     one_year = hours.number_of_years == 1
     years = "one year" if one_year else f"{hours.number_of_years} years; the rows stay in the file"
@@ -46,7 +51,8 @@ def hours_sheet(study: Study) -> Sheet:
         f"{_shown(hours.time[-1])}.",
         "note",
     )
-    page.put(4, 1, f"SHA-256 of the file: {loaded.hours_sha256}", "note")
+    hashed = HASH_OF_ROWS if loaded.hours_path == loaded.path else HASH_OF_FILE
+    page.put(HOURS_HASH_ROW, 1, hashed + loaded.hours_sha256, "note")
     page.headings(HEADER_ROW, ["time", *(name for name, _ in columns)])
     for offset, (label, function, statistic) in enumerate(_STATISTICS):
         row = STATISTICS_ROW + offset

@@ -13,6 +13,7 @@ from typing import Any, Literal
 
 from pydantic.fields import FieldInfo
 
+from appraise.case.book_layout import BLANK_NOTE
 from appraise.case.fields import Curve, PricePath, Table, keys_of
 from appraise.case.kinds import Kind, ListOf, TextOrTexts, Within
 from appraise.case.load import Case
@@ -87,7 +88,7 @@ class _Notes:
 def _blank(leaf: Leaf) -> str:
     if leaf.value is not None:
         return ""
-    return f"blank: {BLANKS.get(f'{leaf.owner}.{leaf.key}', 'none')}"
+    return f"{BLANK_NOTE} {BLANKS.get(f'{leaf.owner}.{leaf.key}', 'none')}"
 
 
 # -- walking through the tables

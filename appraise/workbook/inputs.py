@@ -11,6 +11,19 @@ from itertools import groupby
 from math import ceil, inf
 from typing import TYPE_CHECKING
 
+from appraise.case.book_layout import (
+    ACTS,
+    AS_RUN,
+    CHANGED,
+    HEADING_ROW,
+    HEADINGS,
+    NOTE,
+    PATH,
+    UNIT,
+    VALUE,
+    WORDS,
+)
+from appraise.case.book_layout import INPUTS as TITLE
 from appraise.case.kinds import Kind, OneOf, TrueOrFalse, Whole, Within
 from appraise.case.load import Case
 from appraise.workbook.cells import Page, Sheet, area, quoted, ref
@@ -22,18 +35,17 @@ from appraise.workbook.naming import input_name
 if TYPE_CHECKING:
     from appraise.study import Study
 
-TITLE = "Inputs"
-PATH, WORDS, VALUE, AS_RUN, CHANGED, UNIT, ACTS, NOTE = range(1, 9)
-WIDTHS = (43.0, 37.0, 26.0, 26.0, 9.0, 11.0, 10.0, 46.0)
-HEADINGS = ("path", "what it is", "value", "as run", "changed", "unit", "acts", "source or note")
-HEADING_ROW = 4
+WIDTHS = (43.0, 38.0, 33.0, 26.0, 9.0, 9.5, 10.0, 54.0)
+CHARACTERS, NOTE_CHARACTERS = 1.2, 1.3  # of a text, per character of the width
 
 LARGEST = 1e15  # numbers without a limit of their own, as far as a cell keeps all digits
 LEAST_ABOVE = 1e-9  # stands in a rule for numbers that must lie above 0, where the rule knows only "at least"
-LINE_POINTS, LEAST_POINTS = 13.0, 15.0
+LINE_POINTS, LEAST_POINTS = 12.5, 12.75
+HEADING_POINTS, GAP_POINTS = 17.0, 8.0  # of a group's heading, and of the row before it
 IN_STEP = "Heat balances, hours and sizes belong to these inputs."
 OUTDATED = "Heat balances, hours and sizes are still those of the run: run this workbook again."
-PAGE_POINTS = 730.0  # height of what surely fits on a printed page, at the scale that its width asks for
+PAGE_POINTS = 760.0  # height of what surely fits on a printed page, at the scale that its width asks for
+LEAST_ROWS = 5  # of a group that begins at the foot of a page, its heading included
 SAME = "1E-12"  # numbers that differ by less, relative to the larger, are the same
 
 
@@ -47,10 +59,10 @@ def inputs_sheet(study: Study) -> Sheet:
     page.freeze(HEADING_ROW + 1, VALUE)
     rows = input_rows(case)
     first = _guide(page, case, HEADING_ROW + 1)
-    groups, last = _all_rows(page, case, rows, first)
+    tops, last = _all_rows(page, case, rows, first)
     _summary(page, first, last)
     _marks(page, first, last)
-    page.printed(repeat_rows=(HEADING_ROW, HEADING_ROW), breaks_after=_breaks(groups))
+    page.printed(repeat_rows=(HEADING_ROW, HEADING_ROW), breaks_after=_breaks(page, tops, last))
     return page.finish()
 
 
@@ -102,6 +114,8 @@ def _summary(page: Page, first: int, last: int) -> None:
     verdict = f"=IF(changed_technical>0,{quoted(OUTDATED)},{quoted(IN_STEP)})"
     page.formula(HEADING_ROW + 2, PATH, verdict, IN_STEP, "text_wrap bold")
     page.merge(HEADING_ROW + 2, PATH, HEADING_ROW + 3, PATH)
+    for row in (HEADING_ROW + 2, HEADING_ROW + 3):  # three lines in both
+        page.height(row, 1.5 * LINE_POINTS + 2)
     page.highlight(ref(HEADING_ROW + 2, PATH), "=changed_technical>0", "caution")
     page.highlight(ref(HEADING_ROW + 3, VALUE), "=changed_technical>0", "caution")
 
@@ -118,39 +132,50 @@ def _marks(page: Page, first: int, last: int) -> None:
 
 
 def _heading(page: Page, row: int, text: str) -> None:
+    page.height(row, HEADING_POINTS)
     page.put(row, PATH, text, "section")
     for col in range(WORDS, NOTE + 1):
         page.put(row, col, None, "section")
 
 
-def _all_rows(
-    page: Page, case: Case, rows: Sequence[InputRow], row: int
-) -> tuple[list[tuple[int, float]], int]:
-    """All inputs by group, a heading over each; returns the groups (row, height) and the last row used."""
-    groups: list[tuple[int, float]] = []
+def _all_rows(page: Page, case: Case, rows: Sequence[InputRow], row: int) -> tuple[list[int], int]:
+    """All inputs by group; returns the rows of the groups' headings, and the last row used."""
+    tops: list[int] = []
     for section, members in groupby(rows, key=lambda item: item.section):
-        top, points = row, 2 * LEAST_POINTS
-        _heading(page, top, _title_of(case, section))
+        tops.append(row)
+        _heading(page, row, _title_of(case, section))
         row += 1
         inputs = list(members)
         for index, item in enumerate(inputs):
-            points += _one_row(page, case, item, row)
+            _one_row(page, case, item, row)
             if item.list_path and item.list_path not in {one.list_path for one in inputs[index + 1 :]}:
                 row = _end_of_list(page, inputs[: index + 1], row)
             row += 1
-        groups.append((top, points))
+        page.height(row, GAP_POINTS)
         row += 1
-    return groups, row - 2
+    return tops, row - 2
 
 
-def _breaks(groups: Sequence[tuple[int, float]]) -> list[int]:
-    """Rows after which a page ends, so that no group is torn that fits on one page."""
-    breaks, used = [], groups[0][0] * LEAST_POINTS
-    for top, points in groups:
-        if used + points > PAGE_POINTS:
-            breaks.append(top - 1)
-            used = 0.0
-        used = (used + points) % PAGE_POINTS
+def _breaks(page: Page, tops: Sequence[int], last: int) -> list[int]:
+    """Rows after which a page ends: as few pages as go, and no nearly empty one at the end."""
+    found = _breaks_at(page, tops, last, PAGE_POINTS)
+    for points in range(int(PAGE_POINTS), int(PAGE_POINTS / 2), -10):
+        evener = _breaks_at(page, tops, last, points)
+        if len(evener) > len(found):
+            break
+        found = evener
+    return found
+
+
+def _breaks_at(page: Page, tops: Sequence[int], last: int, points: float) -> list[int]:
+    """The same for pages of so many points; no heading stands at a foot with hardly a row below it."""
+    breaks, used = [], 0.0
+    for row in range(1, last + 1):
+        used += page.points(row)
+        if used > points:
+            head = next((top for top in tops if row - LEAST_ROWS < top <= row), row)
+            breaks.append(head - 1)
+            used = sum(page.points(r) for r in (HEADING_ROW, *range(head, row + 1)))
     return breaks
 
 
@@ -165,8 +190,8 @@ def _title_of(case: Case, section: str) -> str:
     return f"Capital item: {next(one.name for one in case.capex.items if one.key == key)}"
 
 
-def _one_row(page: Page, case: Case, item: InputRow, row: int) -> float:
-    """One input; returns the height of its row."""
+def _one_row(page: Page, case: Case, item: InputRow, row: int) -> None:
+    """One input, in a row as tall as its texts need."""
     style = value_style(item)
     page.put(row, PATH, item.path, "note")
     page.put(row, WORDS, item.words, "label")
@@ -178,7 +203,7 @@ def _one_row(page: Page, case: Case, item: InputRow, row: int) -> float:
     page.put(row, NOTE, item.note or None, "note" if _lines(item.note, NOTE) == 1 else "note_wrap")
     shown = item.value if isinstance(item.value, str) else ""
     _limit(page, case, item, row)
-    return _fit(page, row, ((shown, VALUE), (shown, AS_RUN), (item.note, NOTE)))
+    _fit(page, row, ((shown, VALUE), (shown, AS_RUN), (item.note, NOTE)))
 
 
 def _changed(row: int) -> str:
@@ -198,6 +223,7 @@ def _end_of_list(page: Page, rows: Sequence[InputRow], row: int) -> int:
     if not (path == "capex.spend" or (path.startswith("options.") and path.endswith(".shares"))):
         return row
     row += 1
+    page.height(row, LEAST_POINTS)
     total = f"SUM({input_name(path)})"
     page.put(row, WORDS, "sum, must be 100 %", "label")
     page.formula(row, VALUE, f"={total}", sum(_number(r) for r in rows if r.list_path == path), "percent2")
@@ -210,17 +236,15 @@ def _number(item: InputRow) -> float:
     return float(item.value) if isinstance(item.value, int | float) else 0.0
 
 
-def _fit(page: Page, row: int, texts: Sequence[tuple[str, int]]) -> float:
-    """Height of a row for the longest of its texts, each with its column; set and returned."""
+def _fit(page: Page, row: int, texts: Sequence[tuple[str, int]]) -> None:
+    """Make a row as tall as the longest of its texts needs, each with its column."""
     lines = max(_lines(text, col) for text, col in texts)
-    points = LEAST_POINTS if lines == 1 else lines * LINE_POINTS + 2
-    page.height(row, points)
-    return points
+    page.height(row, LEAST_POINTS if lines == 1 else lines * LINE_POINTS + 2)
 
 
 def _lines(text: str, col: int) -> int:
     """Lines that a text takes in its column; widths count characters of 11 points, notes are smaller."""
-    per_line = WIDTHS[col - 1] * (1.15 if col == NOTE else 1.0)
+    per_line = WIDTHS[col - 1] * (NOTE_CHARACTERS if col == NOTE else CHARACTERS)
     return max(1, ceil(len(text) / per_line))
 
 
@@ -232,7 +256,7 @@ def value_style(item: InputRow) -> str:
     """Kind of look of a value: long texts wrap, fractions are percentages, money and years whole."""
     value: InputValue = item.value
     if isinstance(value, bool):
-        return "text_right"
+        return "general"  # typed into a cell of text, TRUE would be a text
     if isinstance(value, str):
         return _text_style(value)
     if item.unit == "year":

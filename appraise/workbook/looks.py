@@ -10,6 +10,8 @@ from dataclasses import dataclass, replace
 
 FONT = "Calibri"  # Carlito has the same widths where Calibri is missing
 BODY_POINTS = 10.0
+REDUCED_CHART_POINTS = 12.5  # text of charts on wide sheets, which are printed at about two thirds
+REDUCED_YEARS_POINTS = 10.5  # of those with years along the axis, which stand close
 
 SLATE = "2F3E4E"
 ACCENT = "1D6A72"
@@ -39,6 +41,8 @@ NUMBER_FORMATS: Mapping[str, str] = {
     "number4": "#,##0.0000",
     "money": '#,##0;-#,##0;"–"',
     "money2": '#,##0.00;-#,##0.00;"–"',
+    "thousand": '#,##0.0,;-#,##0.0,;"–"',  # of money: the cell holds all of it, the page shows thousands
+    "tiny": "0.0E+00",  # residuals, which have no decimal that matters
     "percent0": "0%",
     "percent1": "0.0%",
     "percent2": "0.00%",
@@ -114,7 +118,7 @@ _FIXED: Mapping[str, Look] = {
     "unit_total": Look(colour=GREY, top="thin", border_colour=SLATE, across="left"),
     "note": Look(points=9, colour=GREY, across="left"),
     "note_wrap": Look(points=9, colour=GREY, across="left", upright="top", wrap=True),
-    "verdict": Look(points=14, bold=True, colour=ACCENT, across="left", upright="top", wrap=True),
+    "verdict": Look(points=14, bold=True, colour=ACCENT, across="left", wrap=True),
     "ok": Look(bold=True, colour=GOOD, fill=GOOD_FILL, across="center"),
     "fail": Look(bold=True, colour=WHITE, fill=BAD, across="center"),
     "caution": Look(bold=True, colour=CAUTION, fill=CAUTION_FILL, across="center"),

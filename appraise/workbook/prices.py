@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+from math import ceil
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -22,6 +24,7 @@ from appraise.workbook.cells import (
 )
 from appraise.workbook.charts import Axis, Series, line_chart
 from appraise.workbook.input_rows import plain_number
+from appraise.workbook.looks import REDUCED_YEARS_POINTS
 from appraise.workbook.naming import CHOSEN_SCENARIO, Timeline, input_name, name_of
 from appraise.workbook.price_rows import (
     CHOSEN_ROW,
@@ -39,6 +42,7 @@ if TYPE_CHECKING:
     from appraise.study import Study
 
 CHART_ROWS = 19
+MOST_YEARS = 10  # named on the axis of a chart
 
 
 CHARTED = ("power", "fuel", "peak_fuel", "carbon")
@@ -78,7 +82,7 @@ class _Prices:
             "Prices by year",
             f"Money of {self.case.study.price_year}, before inflation; no price before operation begins.",
         )
-        page.width([42, 10, 11] + [8.5] * last)
+        page.width([34, 8.5, 9.5] + [7.0] * last)
         self._years()
         self._chosen()
         places = self._lists()
@@ -124,7 +128,7 @@ class _Prices:
 
     def _chosen(self) -> None:
         page, reference = self.page, self.study.reference
-        page.put(INDEX_ROW, LABEL, "Chosen scenario, place in the list", "label")
+        page.put(INDEX_ROW, LABEL, "Chosen scenario, number in the list", "label")
         page.formula(
             INDEX_ROW,
             TOTAL,
@@ -245,7 +249,9 @@ class _Prices:
                 self._place(place, name, kind, path)
                 row += 2
         if row > self.lists_row + 2:
-            title = "Prices given by year: linear between the points in the inputs, held outside them"
+            title = (
+                "Prices given by year: the point in the inputs before each year, and the weight of the next"
+            )
             self.page.put(self.lists_row, LABEL, title, "section")
             self._rule(self.lists_row)
         return places
@@ -256,8 +262,8 @@ class _Prices:
         years = np.asarray(self.time.calendar, dtype=float)
         at = np.clip(np.searchsorted(x, years, side="right"), 1, x.size - 1)
         weight = np.clip((years - x[at - 1]) / (x[at] - x[at - 1]), 0.0, 1.0)
-        label = f"{title}: {kind.key.replace('_', ' ')}, point before"
-        self.page.row_of_formulas(place.row, label, "number", place.before, at.tolist(), "integer")
+        label = f"{title}: {kind.key.replace('_', ' ')}, point"
+        self.page.row_of_formulas(place.row, label, "–", place.before, at.tolist(), "integer")
         self.page.row_of_formulas(
             place.row + 1,
             "weight of the next point",
@@ -279,17 +285,16 @@ class _Prices:
             row = self.row(scenario, KINDS.index(kind))
             series.append(Series(prices.title, TITLE, area(row, first, row, last)))
             says.append(f"{prices.title} from {values[0]:.3g} to {values[-1]:.3g}")
-        self.page.chart(
-            line_chart(
-                f"{kind.label}, {self.unit(kind)}",
-                series,
-                (TITLE, area(YEAR_ROW, first, YEAR_ROW, last)),
-                x="year",
-                y=Axis(self.unit(kind), "0"),
-                alt=f"{kind.label} by year in every scenario, {self.unit(kind)}: {'; '.join(says)}.",
-                anchor=ref(
-                    self.charts_row + CHART_ROWS * (number // 2), LABEL if number % 2 == 0 else YEAR_ZERO + 8
-                ),
-                size_cm=(22.0, 9.6),
-            )
+        chart = line_chart(
+            f"{kind.label}, {self.unit(kind)}",
+            series,
+            (TITLE, area(YEAR_ROW, first, YEAR_ROW, last)),
+            x=Axis("year", "0", step=float(ceil(self.time.years / MOST_YEARS))),
+            y=Axis(self.unit(kind), "0"),
+            alt=f"{kind.label} by year in every scenario, {self.unit(kind)}: {'; '.join(says)}.",
+            anchor=ref(
+                self.charts_row + CHART_ROWS * (number // 2), LABEL if number % 2 == 0 else YEAR_ZERO + 8
+            ),
+            size_cm=(19.4, 9.6),
         )
+        self.page.chart(replace(chart, points=REDUCED_YEARS_POINTS))

@@ -130,15 +130,16 @@ class Values:
         plant = self.case.plant.boiler.co2_kg_per_MWh / 1000.0
         peak = self.case.plant.peak_boiler.co2_kg_per_MWh / 1000.0
         carbon = float(prices.carbon[0])
-        return {
-            "power": lost.weighted_power_MWh * float(prices.power[0]),
-            "premium": lost.premium_MWh * float(prices.premium[0]),
-            "network_fee": -lost.power_MWh * float(prices.fee[0]),
-            "fuel": -lost.fuel_MWh * float(prices.fuel[0]),
+        parts = {
+            "power": lost.weighted_power_MWh * prices.power[0],
+            "premium": lost.premium_MWh * prices.premium[0],
+            "network_fee": -lost.power_MWh * prices.fee[0],
+            "fuel": -lost.fuel_MWh * prices.fuel[0],
             "carbon": -lost.fuel_MWh * carbon * plant,
-            "peak_fuel": lost.peak_fuel_MWh * float(prices.peak_fuel[0]),
+            "peak_fuel": lost.peak_fuel_MWh * prices.peak_fuel[0],
             "peak_carbon": lost.peak_fuel_MWh * carbon * peak,
         }
+        return {line: float(value) for line, value in parts.items()}
 
     # -- present values
 

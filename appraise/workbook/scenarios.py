@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from appraise.numerics import Array
 from appraise.workbook.cells import LABEL, TOTAL, UNIT, Page, Sheet, area, ref
 from appraise.workbook.charts import Axis, Chart, Series, bar_chart
+from appraise.workbook.looks import REDUCED_CHART_POINTS
 from appraise.workbook.naming import name_of
 from appraise.workbook.scenario_values import Values
 from appraise.workbook.scenario_words import best_formula, best_words, regret_formula, regret_words
@@ -17,7 +19,8 @@ if TYPE_CHECKING:
 
 TITLE = "Scenarios"
 WORDS_ROW, MATRIX_TOP = 4, 7
-CHART_ROWS = 19
+CHART_CM, CHART_ROWS, LEAST_CHART_COLUMNS = 10.6, 21, 6
+WIDTH = 12.5
 
 
 def scenarios_sheet(study: Study) -> Sheet:
@@ -50,15 +53,14 @@ class _Scenarios:
         self.regret = self.regret_top + 2
         self.largest = self.regret + height
         self.run_top = self.largest + 2
-        self.chart_row = self.run_top + height + 5
-        self.values = Values(study, self.page, self.chart_row + CHART_ROWS + 1)
+        end = max(self.run_top + height + 4, self.regret_top + CHART_ROWS + 1)
+        self.values = Values(study, self.page, end)
 
     def sheet(self) -> Sheet:
         """Put everything on the page."""
         page = self.page
         page.head("Scenarios", "All scenarios at once, whichever is chosen.")
-        page.width([44, 10] + [14.5] * max(len(self.options) + 2, self.values.columns + 3))
-        page.width({self.last + 1: max(14.5, max(len(name) for name in self.names) + 2.0)})
+        page.width([46, 6] + [WIDTH] * max(len(self.options) + 2, self.values.columns + 3))
         self._words()
         self._matrix()
         self._regret()
@@ -93,8 +95,8 @@ class _Scenarios:
             regret_words(comparison.largest_regret, comparison.worst, self.names, currency),
             "text_wrap bold",
         )
-        for row, points in ((WORDS_ROW, 40), (WORDS_ROW + 1, 32)):
-            page.merge(row, LABEL, row, TOTAL + 7)
+        for row, points in ((WORDS_ROW, 24), (WORDS_ROW + 1, 20)):
+            page.merge(row, LABEL, row, TOTAL + 11)
             page.height(row, points)
 
     def _section(self, row: int, title: str) -> None:
@@ -124,7 +126,8 @@ class _Scenarios:
     def _matrix(self) -> None:
         page, comparison, currency = self.page, self.study.comparison, self.case.study.currency
         self._section(MATRIX_TOP, "Net present value against the baseline")
-        self._headings(MATRIX_TOP + 1, "Scenario", "best option", "its place")
+        self._headings(MATRIX_TOP + 1, "Scenario", "best: number from the left", "best option")
+        page.merge(MATRIX_TOP + 1, self.last + 2, MATRIX_TOP + 1, self.last + 3)
         names = area(MATRIX_TOP + 1, TOTAL, MATRIX_TOP + 1, self.last, absolute=True)
         for number, scenario in enumerate(self.scenarios):
             row = self.matrix + number
@@ -140,12 +143,12 @@ class _Scenarios:
                     )
             cells = self._row(row)
             best = comparison.best[number]
-            place = ref(row, self.last + 2)
+            place = ref(row, self.last + 1)
             text = f"=INDEX({names},1,{place})"
+            page.formula(row, self.last + 1, f"=MATCH(MAX({cells}),{cells},0)", best + 1, "integer")
             page.formula(
-                row, self.last + 1, text, self.names[best], "text_centre bold", name_of("best", scenario)
+                row, self.last + 2, text, self.names[best], "label_indent", name_of("best", scenario)
             )
-            page.formula(row, self.last + 2, f"=MATCH(MAX({cells}),{cells},0)", best + 1, "integer")
         self._summary(
             self.worst,
             "Worst of the scenarios",
@@ -166,7 +169,7 @@ class _Scenarios:
         page, best = self.page, self.study.comparison.best
         page.put(self.counts, LABEL, "Best in so many scenarios", "label")
         page.put(self.counts, UNIT, "–", "unit")
-        found = area(self.matrix, self.last + 2, self.worst - 1, self.last + 2, absolute=True)
+        found = area(self.matrix, self.last + 1, self.worst - 1, self.last + 1, absolute=True)
         for index in range(len(self.options)):
             col = TOTAL + index
             here = f"{ref(self.counts, TOTAL, 'column')}:{ref(self.counts, col)}"
@@ -175,7 +178,7 @@ class _Scenarios:
 
     def _regret(self) -> None:
         page, comparison = self.page, self.study.comparison
-        self._section(self.regret_top, "Regret: how far behind the best option of the scenario")
+        self._section(self.regret_top, "Regret: what an option costs against the best one of the scenario")
         self._headings(self.regret_top + 1, "Scenario")
         for number, scenario in enumerate(self.scenarios):
             row, source = self.regret + number, self.matrix + number
@@ -225,11 +228,12 @@ class _Scenarios:
     def _chart(self) -> Chart:
         comparison, currency = self.study.comparison, self.case.study.currency
         others = [index for index in range(len(self.options)) if index != self.base]
+        columns = max(LEAST_CHART_COLUMNS, self.values.npv_column - self.last - 1)
         says = "; ".join(
             f"{title}: " + ", ".join(f"{self.names[i]} {comparison.npv[n, i]:,.0f}" for i in others)
             for n, title in enumerate(self.titles)
         )
-        return bar_chart(
+        chart = bar_chart(
             f"Net present value by scenario; {self.names[self.base]} is 0",
             [
                 Series(self.names[i], TITLE, area(self.matrix, TOTAL + i, self.worst - 1, TOTAL + i))
@@ -237,8 +241,9 @@ class _Scenarios:
             ],
             (TITLE, area(self.matrix, LABEL, self.worst - 1, LABEL)),
             x="",
-            y=Axis(f"{currency}", "#,##0"),
+            y=Axis(f"thousand {currency}", "#,##0,"),
             alt=f"Net present value of each option by scenario, {currency}, as run. {says}.",
-            anchor=ref(self.chart_row, LABEL),
-            size_cm=(26.0, 9.0),
+            anchor=ref(self.regret_top, self.last + 2),
+            size_cm=(columns * (WIDTH * 7.0 + 5.0) / 96.0 * 2.54, CHART_CM),
         )
+        return replace(chart, points=REDUCED_CHART_POINTS)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from math import ceil
 from typing import TYPE_CHECKING
 
@@ -9,6 +10,7 @@ from appraise.case.money import Driver
 from appraise.sensitivity import Tornado
 from appraise.workbook.cells import LABEL, Page, Sheet, area, ref
 from appraise.workbook.charts import Axis, Series, tornado_chart
+from appraise.workbook.looks import REDUCED_CHART_POINTS
 from appraise.workbook.naming import name_of
 from appraise.workbook.tornado_bars import Bars
 
@@ -18,11 +20,14 @@ if TYPE_CHECKING:
 TITLE = "Tornado"
 TOP = 6
 ROW_CM = 15.0 / 72.0 * 2.54  # a row of 15 points
-(DRIVER, HOW, NOW, LOW, HIGH, NPV_LOW, NPV_HIGH, DOWN, UP, SWING, PLACE, REASON) = range(1, 13)
-CHART_COLUMN = REASON + 1
+PAGE_CM = 39.0  # height of what surely fits on a printed page, at the scale that the width asks for
+(DRIVER, HOW, UNIT, NOW, LOW, HIGH, NPV_LOW, NPV_HIGH, DOWN, UP, SWING, PLACE, REASON) = range(1, 14)
+LAST_PRINTED = REASON
+WIDTHS = (36.0, 8.0, 9.5, 10.0, 8.5, 8.5, 11.5, 11.5, 11.5, 11.5, 11.5, 8.0, 14.0)
 HEADINGS = (
     "Driver",
     "bar",
+    "unit",
     "in the run",
     "low",
     "high",
@@ -31,13 +36,15 @@ HEADINGS = (
     "change at low",
     "change at high",
     "swing",
-    "line below",
+    "place in the list",
     "why no value",
 )
 NOTE = (
     "Each driver alone goes to its low and its high end, the rest stays as it is. Live bars follow the "
     "inputs and the chosen scenario, with the hours as run. Bars as run were solved in the reference "
-    "scenario; after a change of inputs they keep their difference to the net present value of the run."
+    "scenario; after a change of inputs they keep their difference to the net present value of the run. A "
+    "share, as −25 %, multiplies what is in the run; any other end replaces it. NPV: net present value. How "
+    "the bars are made stands below and is not printed."
 )
 
 
@@ -45,13 +52,13 @@ def tornado_sheet(study: Study) -> Sheet:
     """A sorted table and a chart for each option but the baseline; how the bars are made below."""
     page = Page(TITLE, "live")
     page.head("Tornado: one driver at a time")
-    page.width([36, 7, 10, 8.5, 8.5, 11, 11, 13, 12, 12, 6, 14, 12, 12, 13, 38])
-    page.paragraph(4, LABEL, SWING, NOTE, "note_wrap")
+    page.width([*WIDTHS, 12, 12, 38])
+    page.paragraph(4, LABEL, LAST_PRINTED, NOTE, "note_wrap")
     drivers = [driver for driver in study.case.drivers if driver.low is not None and driver.high is not None]
     if not drivers or not study.tornado:
         page.put(TOP, LABEL, "The case names no driver with a low and a high end, or no option to vary.")
         return page.finish()
-    height = max(len(drivers) + 4, ceil(_chart_cm(len(drivers)) / ROW_CM) + 3)
+    height = len(drivers) + 3 + ceil(_chart_cm(len(drivers)) / ROW_CM) + 2
     bars_top = TOP + height * len(study.tornado)
     breaks = []
     for number, tornado in enumerate(study.tornado):
@@ -61,13 +68,17 @@ def tornado_sheet(study: Study) -> Sheet:
         _Sorted(study, page, tornado, bars, top).write()
         breaks.append(top + height - 1)
     page.freeze(4, 2)
-    page.printed(breaks_after=breaks)
+    page.printed(landscape=False, area=area(1, 1, breaks[-1], LAST_PRINTED), breaks_after=breaks[:-1])
     return page.finish()
 
 
 def _chart_cm(drivers: int) -> float:
-    """Height of a chart of so many bars."""
-    return max(8.0, 0.6 * drivers + 3.0)
+    """Height of a chart of so many bars: generous, as far as the page has room below the table."""
+    room = PAGE_CM - ROW_CM * (drivers + 10)
+    return max(8.0, 0.5 * drivers + 3.0, min(1.1 * drivers + 3.0, room))
+
+
+CHART_WIDTH_CM = sum(width * 7.0 + 5.0 for width in WIDTHS) / 96.0 * 2.54 - 0.2
 
 
 class _Sorted:
@@ -92,7 +103,7 @@ class _Sorted:
             f"{self.name}: change of net present value, base {base / 1000.0:,.0f} thousand {self.currency}",
             "section",
         )
-        for col in range(LABEL + 1, CHART_COLUMN):
+        for col in range(LABEL + 1, LAST_PRINTED + 1):
             page.put(self.top, col, None, "section")
         page.headings(self.top + 1, HEADINGS)
         page.height(self.top + 1, 30)
@@ -115,6 +126,7 @@ class _Sorted:
 
         pick(DRIVER, "driver", driver.label, "label")
         pick(HOW, "how", bars.how(index), "text_centre")
+        pick(UNIT, "unit", bars.unit(index), "unit", '&""')
         pick(NOW, "now", bars.now(index), "text_right")
         pick(LOW, "low_text", bars.text(driver.low), "text_right")
         pick(HIGH, "high_text", bars.text(driver.high), "text_right")
@@ -132,20 +144,19 @@ class _Sorted:
         rows = self.first, self.last
         low, high = (area(rows[0], col, rows[1], col) for col in (DOWN, UP))
         widest = [self.bars.drivers[index].label for index in self.bars.order[:3]]
-        self.page.chart(
-            tornado_chart(
-                f"{self.name}: change of net present value",
-                Series("driver at its low end", TITLE, low),
-                Series("driver at its high end", TITLE, high),
-                (TITLE, area(rows[0], DRIVER, rows[1], DRIVER)),
-                y=Axis(f"change, {self.currency}", "#,##0"),
-                alt=f"Change of the net present value of {self.name} with one driver at its low or high end, "
-                f"{self.currency}, as run around {self.tornado.base_npv:,.0f}. Widest: {', '.join(widest)}.",
-                anchor=ref(self.top + 1, CHART_COLUMN),
-                size_cm=(19.0, _chart_cm(len(self.bars.drivers))),
-                title_cell=(TITLE, ref(self.top, LABEL)),
-            )
+        chart = tornado_chart(
+            f"{self.name}: change of net present value",
+            Series("driver at its low end", TITLE, low),
+            Series("driver at its high end", TITLE, high),
+            (TITLE, area(rows[0], DRIVER, rows[1], DRIVER)),
+            y=Axis(f"change, thousand {self.currency}", "#,##0,"),
+            alt=f"Change of the net present value of {self.name} with one driver at its low or high end, "
+            f"{self.currency}, as run around {self.tornado.base_npv:,.0f}. Widest: {', '.join(widest)}.",
+            anchor=ref(self.last + 2, LABEL),
+            size_cm=(CHART_WIDTH_CM, _chart_cm(len(self.bars.drivers))),
+            title_cell=(TITLE, ref(self.top, LABEL)),
         )
+        self.page.chart(replace(chart, points=REDUCED_CHART_POINTS))
 
 
 def _quotable(text: str) -> str:

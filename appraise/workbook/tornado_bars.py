@@ -9,6 +9,7 @@ from appraise.case.money import Driver
 from appraise.case.paths import value_in_force
 from appraise.sensitivity import Bar, Change, Tornado
 from appraise.workbook.cells import Page, area, ref
+from appraise.workbook.input_rows import input_rows
 from appraise.workbook.naming import name_of
 from appraise.workbook.tornado_drivers import AS_RUN, LiveBar, live_bar, shown, value_now
 
@@ -34,6 +35,7 @@ COLUMNS = (
     ("swing", "swing"),
     ("path", "path"),
     ("reason", "why no value"),
+    ("unit", "unit"),
 )
 AT = {name: number for number, (name, _) in enumerate(COLUMNS, 1)}
 
@@ -46,6 +48,7 @@ class Bars:
     ) -> None:
         self.study, self.case, self.page, self.tornado, self.top = study, study.case, page, tornado, top
         self.drivers, self.key = drivers, tornado.option
+        self.units = {row.path: row.unit for row in input_rows(study.case)}
         self.option = [option.key for option in study.case.options].index(tornado.option)
         left = list(tornado.bars)
         self.bars: list[Bar] = []
@@ -77,6 +80,15 @@ class Bars:
     def now(self, index: int) -> str:
         """The driver's value in the run."""
         return value_now(self.case, self.drivers[index])
+
+    def unit(self, index: int) -> str:
+        """Unit of the driver, as the Inputs sheet has it; shares are shown as fractions here."""
+        path = self.drivers[index].path
+        if path.startswith("scenario."):
+            path = f"scenarios.{self.case.study.reference_scenario}.{path.removeprefix('scenario.')}"
+        found = (self.units.get(path + ending) for ending in ("", ".start", ".value[0]"))
+        unit = next((unit for unit in found if unit is not None), "")
+        return "–" if unit == "%" else unit
 
     @staticmethod
     def text(end: Change | None) -> str:
@@ -121,6 +133,7 @@ class Bars:
         page.put(row, AT["run_high"], bar.npv_high, "money as run")
         page.put(row, AT["reason"], self.reason(index), "note")
         page.put(row, AT["path"], driver.path, "label_indent")
+        page.put(row, AT["unit"], self.unit(index), "unit")
         if live.worth:
             page.formula(row, AT["worth"], f"={live.worth}", self._worth(index), "money")
         for end, change in (("low", driver.low), ("high", driver.high)):

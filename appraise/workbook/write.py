@@ -112,6 +112,11 @@ def _write_value(target: Any, cell: Cell) -> bool:
         target.value = stored_text(cell.value)
         target.data_type = "s"
         return needs_prefix(cell.value)
+    if isinstance(cell.value, float):
+        # openpyxl would write sixteen digits, which are too few to tell all numbers apart.
+        target.value = repr(cell.value)
+        target.data_type = "n"
+        return False
     number_format = target.number_format
     target.value = cell.value
     target.number_format = number_format  # openpyxl gives dates one of its own
@@ -181,13 +186,13 @@ def _set_print(page: Any, sheet: Sheet, title: str, footer: str) -> None:
     page.page_setup.fitToHeight = printing.pages_tall
     page.print_options.horizontalCentered = True
     page.page_margins.left = page.page_margins.right = MARGIN_INCH
-    page.page_margins.top = page.page_margins.bottom = 1.5 * MARGIN_INCH
+    page.page_margins.top = page.page_margins.bottom = 1.25 * MARGIN_INCH
     page.page_margins.header = page.page_margins.footer = 0.6 * MARGIN_INCH
     page.oddHeader.left.text = header_text(title, HEADER_SHARE)
     page.oddHeader.right.text = header_text(sheet.title, HEADER_SHARE)
     page.oddFooter.left.text = header_text(footer, HEADER_SHARE)
-    page.oddFooter.center.text = "printed &D"
-    page.oddFooter.right.text = "page &P of &N"
+    page.oddFooter.right.text = "printed &D · page &P of &N"
+    page.HeaderFooter.scaleWithDoc = False  # as large on a page that is fitted as on any other
     if printing.repeat_rows:
         page.print_title_rows = "{}:{}".format(*printing.repeat_rows)
     page.print_area = printing.area or _used_area(sheet)

@@ -35,6 +35,7 @@ def year_sheet(study: Study) -> Sheet:
     last_col = UNIT + max(LEAST_COLUMNS, min(len(study.case.options), MOST_COLUMNS))
     page.width([38, 12, 14] + [WIDTH] * max(timeline.number, MOST_COLUMNS - 1))
     page.head(TITLE, "Energies a year, availability included; hours as solved.")
+    page.put(3, 1, "The months in figures stand below what is printed.", "note")
     row = _figures(page, 4, study, last_col)
     breaks = [row - 1]
     row, gains = _by_scenario(page, row, study, last_col)
@@ -44,11 +45,10 @@ def year_sheet(study: Study) -> Sheet:
     put_section(page, row, "Load and months, first year of operation", last_col)
     anchors = [f"A{row + 1 + i * CHART_ROWS}" for i in range(3)]
     row += 1 + 3 * CHART_ROWS
-    breaks.append(row - 1)
-    row, heat_chart, extra_chart = put_months(page, row, study, (anchors[1], anchors[2]), last_col)
-    last_printed = row - 2
+    last_printed = row - 1
     put_section(page, row, "What other sheets and the charts draw on; not printed", last_col)
-    row = put_tie_in(page, row + 1, study)
+    row, heat_chart, extra_chart = put_months(page, row + 1, study, (anchors[1], anchors[2]), last_col)
+    row = put_tie_in(page, row, study)
     row = put_years(page, row, study, timeline)
     charts = (put_duration(page, row, study, anchors[0]), heat_chart, extra_chart, gain_chart)
     for chart in charts:
