@@ -8,8 +8,7 @@ from __future__ import annotations
 import os
 import sys
 import traceback
-from collections.abc import Callable, Iterator, Sequence
-from contextlib import contextmanager
+from collections.abc import Sequence
 from io import TextIOWrapper
 from pathlib import Path
 from typing import TYPE_CHECKING, NamedTuple
@@ -17,14 +16,11 @@ from typing import TYPE_CHECKING, NamedTuple
 import click
 
 from appraise import __version__
+from appraise.console import STANDARD_OUTPUT, check_targets, default_out, deliver, files, progress_bar
 from appraise.errors import AppraiseError, CaseError, FileProblem
 
 if TYPE_CHECKING:
     from appraise.case.load import LoadedCase
-
-Progress = Callable[[float, str], None]
-
-STANDARD_OUTPUT = Path("-")
 
 # The matrices here are so small that threads of the linear algebra library only wait for one another: on a
 # busy machine they take four times as long. It reads this when numpy is imported, which comes later.
@@ -103,7 +99,7 @@ def new(folder: Path) -> None:
       appraise new marrowby
     """
     from appraise.files import write_whole
-    from appraise.starting import next_command, starter_files
+    from appraise.starting import next_command
 
     contents = {folder / name: data for name, data in starter_files().items()}
     there = [str(path) for path in contents if os.path.lexists(path)]
@@ -156,7 +152,7 @@ def balance(case_path: Path, key: str | None, point: Point | None, json_path: Pa
 
     loaded = load_case(case_path)
     _check_key(loaded, key)
-    _check_targets(loaded, *_files(json_path))
+    check_targets(loaded, *files(json_path))
     from appraise.study import balances, point_balances
 
     solved = balances(loaded.case) if point is None else point_balances(loaded.case, *point)
@@ -164,7 +160,7 @@ def balance(case_path: Path, key: str | None, point: Point | None, json_path: Pa
     text = output.json_text(output.balance_json(chosen))
     if json_path != STANDARD_OUTPUT:
         click.echo(output.balance_table(chosen, _point_title(loaded, point), states=key is not None))
-    _deliver({}, json_path, text, quiet=False)
+    deliver({}, json_path, text, quiet=False)
 
 
 @program.command()
@@ -202,26 +198,26 @@ def run(
       appraise run marrowby/marrowby.toml --out case.xlsx --json results.json
       appraise run case.xlsx
     """
-    out = out or _default_out(case_path)
+    out = out or default_out(case_path)
     if out.suffix.lower() != ".xlsx":
         raise click.UsageError(f"--out: '{out}' does not end in .xlsx")
     from appraise import output, results
     from appraise.case.load import load_case
 
     loaded = load_case(case_path)
-    _check_targets(loaded, out, *_files(json_path))
+    check_targets(loaded, out, *files(json_path))
     if loaded.doubts and not quiet:
         click.echo(output.problem_list(loaded.doubts, "doubt"), err=True)
     from appraise.study import run_study
     from appraise.workbook.book import workbook_bytes
 
-    with _progress(shown=not quiet) as progress:
+    with progress_bar(shown=not quiet) as progress:
         study = run_study(loaded, progress, draws, verify)
         contents = {out: workbook_bytes(study)}
     text = output.json_text(results.study_json(study)) if json_path else ""
     if json_path != STANDARD_OUTPUT and not quiet:
         click.echo(results.run_summary(study))
-    _deliver(contents, json_path, text, quiet)
+    deliver(contents, json_path, text, quiet)
 
 
 @program.command()
@@ -243,7 +239,7 @@ def optimum(case_path: Path, key: str | None, json_path: Path | None) -> None:
 
     loaded = load_case(case_path)
     _check_key(loaded, key)
-    _check_targets(loaded, *_files(json_path))
+    check_targets(loaded, *files(json_path))
     from appraise.study import design_of
 
     choice = design_of(loaded, key)
@@ -251,7 +247,7 @@ def optimum(case_path: Path, key: str | None, json_path: Path | None) -> None:
         raise click.UsageError("optimum: needs an option with at least two stages")
     if json_path != STANDARD_OUTPUT:
         click.echo(results.optimum_table(choice, loaded.case.study.currency))
-    _deliver({}, json_path, output.json_text({"design_choice": choice}), quiet=False)
+    deliver({}, json_path, output.json_text({"design_choice": choice}), quiet=False)
 
 
 def _point_title(loaded: LoadedCase, point: Point | None) -> str:
@@ -265,57 +261,6 @@ def _check_key(loaded: LoadedCase, key: str | None) -> None:
     keys = [option.key for option in loaded.case.options]
     if key is not None and key not in keys:
         raise click.UsageError(f"--option: the case has no option '{key}'; it has {', '.join(keys)}")
-
-
-def _default_out(case_path: Path) -> Path:
-    """The workbook of a case; a workbook that is itself the case is kept."""
-    out = Path("reports", f"{case_path.stem}.xlsx")
-    return out.with_stem(f"{out.stem}-again") if out.resolve() == case_path.resolve() else out
-
-
-def _files(json_path: Path | None) -> list[Path]:
-    return [] if json_path in (None, STANDARD_OUTPUT) else [json_path]
-
-
-def _check_targets(loaded: LoadedCase, *targets: Path) -> None:
-    """Refuse targets that cannot be written or would bury what was read, before any solving."""
-    from appraise.files import check_target
-
-    taken = {loaded.hours_path.resolve(): "the hours of the case", loaded.path.resolve(): "the case itself"}
-    for target in targets:
-        check_target(target)
-        holder = taken.setdefault(target.resolve(), "another result")
-        if holder != "another result" or len({t.resolve() for t in targets}) < len(targets):
-            raise FileProblem(f"{target}: would overwrite {holder}; give another name")
-
-
-def _deliver(contents: dict[Path, bytes], json_path: Path | None, text: str, quiet: bool) -> None:
-    """Write the files together, or the JSON to standard output, and say what was written."""
-    from appraise.files import write_whole
-
-    contents = contents | {path: text.encode() for path in _files(json_path)}
-    write_whole(contents)
-    if json_path == STANDARD_OUTPUT:
-        click.echo(text, nl=False)
-    elif not quiet:
-        for path in contents:
-            click.echo(f"wrote {path}")
-
-
-@contextmanager
-def _progress(shown: bool) -> Iterator[Progress]:
-    """A bar on standard error while a person watches; nothing in a log or a pipe."""
-    if not (shown and sys.stderr.isatty()):
-        yield lambda fraction, label: None
-        return
-    with click.progressbar(length=1000, file=sys.stderr, show_eta=False) as bar:
-
-        def advance(fraction: float, label: str) -> None:
-            bar.label = f"{label:<24.24}"
-            bar.update(max(0, round(1000 * fraction) - bar.pos))
-            bar.render_progress()
-
-        yield advance
 
 
 def main(arguments: Sequence[str] | None = None) -> int:

@@ -25,7 +25,7 @@ from appraise.workers import each
 
 _BLOCK = 2000  # draws whose money is held at once
 _HOUR_STEPS = (2, 1)  # the second only where the first is not accurate enough
-_DENSITY = (1.0, 2.0)
+_DENSITY = (1.4, 2.0)
 METHOD_LIMIT = 0.01
 FEWEST_CHECKED = 12
 

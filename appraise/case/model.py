@@ -13,7 +13,8 @@ from appraise.case.kinds import (
     faults,
 )
 from appraise.case.money import Capex, Draws, Driver, Emissions, Finance, Opex, Scenario
-from appraise.case.plant import Network, NewCondenser, Option, Plant, Study, Tail, Year
+from appraise.case.network import Network, Year
+from appraise.case.plant import NewCondenser, Option, Plant, Study, Tail
 from appraise.case.words import said
 
 

@@ -1,21 +1,17 @@
-"""The tables of a case about the plant, its options, the network and the year. Keys as in the file."""
+"""The tables of a case about the plant and its options. Keys as in the file."""
 
 from collections.abc import Iterator
 from typing import Annotated
-
-from pydantic import Field
 
 from appraise.case.fields import (
     EfficiencyCurve,
     MultiplierCurve,
     Table,
-    not_as_long,
 )
 from appraise.case.kinds import (
     AnyText,
     CalendarYear,
     CurrencyCode,
-    Day,
     DifferenceK,
     Efficiency,
     Exponent,
@@ -27,26 +23,18 @@ from appraise.case.kinds import (
     MaybePositive,
     MaybeShare,
     NotNegative,
-    Number,
-    OffsetK,
     OneOf,
     Positive,
-    RisingNumbers,
     Share,
     Text,
     WaterC,
     Whole,
     Within,
-    YearlyChange,
     Years,
 )
+from appraise.case.network import return_above_supply
 
 FLAT_ONE = MultiplierCurve(load=(1.0,), value=(1.0,))
-
-
-def _return_above_supply(supply_C: float, return_C: float) -> Iterator[tuple[str, str]]:
-    if return_C >= supply_C:
-        yield "return_C", f"{return_C:g} °C given; allowed: below the supply of {supply_C:g} °C"
 
 
 class Study(Table):
@@ -154,7 +142,7 @@ class DesignPoint(Table):
 
     def contradictions(self) -> Iterator[tuple[str, str]]:
         """Supply above return."""
-        yield from _return_above_supply(self.supply_C, self.return_C)
+        yield from return_above_supply(self.supply_C, self.return_C)
 
 
 class FlueGasCondenser(Table):
@@ -185,7 +173,7 @@ class Measured(Table):
 
     def contradictions(self) -> Iterator[tuple[str, str]]:
         """Supply above return."""
-        yield from _return_above_supply(self.supply_C, self.return_C)
+        yield from return_above_supply(self.supply_C, self.return_C)
 
 
 class Plant(Table):
@@ -289,67 +277,3 @@ class Option(Table):
                 "terminal_difference_K",
                 "given here and in new_condenser.terminal_difference_K; allowed: one of the two",
             )
-
-
-class HeatingCurve(Table):
-    """Network temperatures over outdoor temperature, held outside; used where the hours give none."""
-
-    outdoor_C: RisingNumbers
-    supply_C: Annotated[tuple[float, ...], ListOf(Within(0, 200), "temperatures from 0 to 200")]
-    return_C: Annotated[tuple[float, ...], ListOf(Within(0, 200), "temperatures from 0 to 200")]
-
-    def contradictions(self) -> Iterator[tuple[str, str]]:
-        """Equal lengths, supply above return at every point."""
-        yield from not_as_long("supply_C", self.supply_C, "outdoor_C", self.outdoor_C)
-        yield from not_as_long("return_C", self.return_C, "outdoor_C", self.outdoor_C)
-        for outdoor, supply, back in zip(self.outdoor_C, self.supply_C, self.return_C, strict=False):
-            for key, message in _return_above_supply(supply, back):
-                yield key, f"at {outdoor:g} °C outdoors {message}"
-
-
-class Network(Table):
-    """The district-heating network at the plant."""
-
-    pressure_bar: Annotated[float, Within(1, 100)] = 10.0
-    pump_efficiency: Efficiency = 0.75
-    heating_curve: HeatingCurve | None = None
-
-
-class HeatSignature(Table):
-    """Heat over outdoor temperature: base + slope x max(0, threshold - outdoor)."""
-
-    base_MW: NotNegative
-    slope_MW_per_K: NotNegative
-    threshold_C: Annotated[float, Within(-60, 60)]
-
-
-class Outage(Table):
-    """Days on which the plant stands still, both included; may wrap the new year."""
-
-    from_: Day = Field(alias="from")
-    to: Day
-
-
-class Metered(Table):
-    """A metered year of the plant as it stands."""
-
-    heat_MWh: Positive
-    power_net_MWh: Number
-    fuel_MWh: Positive
-
-
-class Year(Table):
-    """The hours of the year and what changes from year to year."""
-
-    series: Text
-    heat_signature: HeatSignature | None = None
-    availability: Efficiency = 1.0
-    heat_multiplier: Positive = 1.0
-    supply_offset_K: OffsetK = 0.0
-    return_offset_K: OffsetK = 0.0
-    outages: tuple[Outage, ...] = ()
-    change_per_year: YearlyChange = 0.0
-    supply_change_K_per_year: OffsetK = 0.0
-    return_change_K_per_year: OffsetK = 0.0
-    extra_running: Flag = False
-    metered: Metered | None = None

@@ -18,8 +18,9 @@ from appraise.case.fields import Curve, PricePath, Table, keys_of
 from appraise.case.kinds import Kind, ListOf, TextOrTexts, Within
 from appraise.case.load import Case
 from appraise.case.money import CapexItem, Correlation
+from appraise.workbook.input_sections import BLANKS, SECTIONS
 from appraise.workbook.input_units import InputValue, Leaf, unit_of_leaf
-from appraise.workbook.input_words import BLANKS, SECTIONS, WORDS
+from appraise.workbook.input_words import WORDS
 
 Acts = Literal["live", "run again", "text"]
 

@@ -28,8 +28,8 @@ from appraise.case.kinds import Kind, OneOf, TrueOrFalse, Whole, Within
 from appraise.case.load import Case
 from appraise.workbook.cells import Page, Sheet, area, quoted, ref
 from appraise.workbook.input_rows import InputRow, input_rows
+from appraise.workbook.input_sections import SECTIONS
 from appraise.workbook.input_units import InputValue
-from appraise.workbook.input_words import SECTIONS
 from appraise.workbook.naming import input_name
 
 if TYPE_CHECKING:
