@@ -99,7 +99,7 @@ def new(folder: Path) -> None:
       appraise new marrowby
     """
     from appraise.files import write_whole
-    from appraise.starting import next_command
+    from appraise.starting import next_command, starter_files
 
     contents = {folder / name: data for name, data in starter_files().items()}
     there = [str(path) for path in contents if os.path.lexists(path)]

@@ -2,6 +2,7 @@
 
 from collections import Counter
 from collections.abc import Iterator
+from itertools import pairwise
 from types import UnionType
 from typing import Annotated, Any, Union, get_args, get_origin
 
@@ -15,11 +16,12 @@ from appraise.case.fields import Curve, PricePath, Table, keys_of
 from appraise.case.kinds import Kind
 from appraise.case.model import Case
 from appraise.workbook.addresses import cells_in
-from appraise.workbook.cells import ListRule, NumberRule, Sheet
+from appraise.workbook.cells import DEFAULT_HEIGHT, ListRule, NumberRule, Sheet
 from appraise.workbook.input_rows import acts, input_rows
-from appraise.workbook.input_words import BLANKS, SECTIONS, WORDS
-from appraise.workbook.inputs import CHANGED, VALUE, inputs_sheet
-from appraise.workbook.looks import is_input
+from appraise.workbook.input_sections import BLANKS, SECTIONS
+from appraise.workbook.input_words import WORDS
+from appraise.workbook.inputs import CHANGED, PAGE_POINTS, VALUE, inputs_sheet
+from appraise.workbook.looks import STYLES, is_input
 from appraise.workbook.naming import input_name
 
 CASES = {"demo": lambda: marrowby().case, "full": full_case}
@@ -229,6 +231,30 @@ def test_every_number_has_limits_that_hold_it_and_follow_the_reader(case: Case) 
             if row.path != "study.years" and abs(end) < 1e15:
                 assert isinstance(row.kind, Kind)
                 assert row.kind(int(end) if rule.whole else end) == end, row.path
+
+
+def test_what_is_true_or_false_stays_so_when_it_is_typed_again(case: Case) -> None:
+    """In a cell formatted as text, a typed TRUE would be a text, and no formula takes that for true."""
+    cells = sheet_of(case).cells.values()
+    found = [STYLES[c.style].number_format for c in cells if isinstance(c.value, bool) and c.name]
+    assert found
+    assert set(found) == {"General"}
+
+
+def test_pages_are_full_but_not_too_full_and_end_before_a_heading() -> None:
+    sheet = sheet_of(marrowby().case)
+    last = max(row for row, _ in sheet.cells)
+    ends = [0, *sheet.printing.breaks_after, last]
+    tall = [
+        sum(sheet.heights.get(row, DEFAULT_HEIGHT) for row in range(first + 1, end + 1))
+        for first, end in pairwise(ends)
+    ]
+    assert max(tall) <= PAGE_POINTS
+    assert min(tall) > 0.5 * PAGE_POINTS
+    for end in ends[1:-1]:
+        assert all(
+            sheet.cells[row, 1].style != "section" for row in (end, end - 1) if (row, 1) in sheet.cells
+        )
 
 
 def test_limits_of_a_few() -> None:

@@ -3,6 +3,7 @@
 import io
 import zipfile
 from collections.abc import Sequence
+from dataclasses import replace
 from xml.etree.ElementTree import Element
 
 import pytest
@@ -244,6 +245,19 @@ def test_limits_of_an_axis_are_kept() -> None:
     value = axes(xml_of(chart))[1]
     assert (vals(value, "scaling/min"), vals(value, "scaling/max")) == (["-5"], ["5"])
     assert vals(value, "majorUnit") == ["2.5"]
+
+
+def test_every_bar_is_named_and_years_may_be_named_by_steps() -> None:
+    for kind in ("clustered", "tornado"):
+        assert vals(xml_of(CHARTS[kind]), "catAx/tickLblSkip") == ["1"]
+    yearly = replace(CHARTS["line"], x=Axis("year", "0", step=3.0))
+    assert vals(xml_of(yearly), "catAx/tickLblSkip") == ["3"]
+    assert vals(xml_of(yearly), "catAx/tickMarkSkip") == ["3"]
+
+
+def test_text_may_be_larger_where_a_page_is_printed_smaller() -> None:
+    large = xml_of(replace(CHARTS["clustered"], points=12.5))
+    assert {look.get("sz") for look in large.iter(A + "defRPr")} == {"1250", "1450", "1150"}
 
 
 def test_a_chart_needs_series_description_and_x() -> None:

@@ -6,13 +6,16 @@ from collections.abc import Callable
 
 from appraise import __version__
 from appraise.study import Study
+from appraise.workbook.break_even import break_even_sheet
 from appraise.workbook.capex import capex_sheet
 from appraise.workbook.cash_flow import cash_flow_sheet
 from appraise.workbook.cautions import cautions_sheet
 from appraise.workbook.cells import Sheet
 from appraise.workbook.checks import checks_sheet
 from appraise.workbook.decision import decision_sheet
+from appraise.workbook.design_choice import design_choice_sheet
 from appraise.workbook.diagrams import diagrams_sheet
+from appraise.workbook.draws import draws_sheet
 from appraise.workbook.heat_balance import heat_balance_sheet
 from appraise.workbook.hours import hours_sheet
 from appraise.workbook.inputs import inputs_sheet
@@ -22,7 +25,7 @@ from appraise.workbook.tornado import tornado_sheet
 from appraise.workbook.write import book_bytes
 from appraise.workbook.year import year_sheet
 
-SHEETS: tuple[Callable[[Study], Sheet], ...] = (
+SHEETS: tuple[Callable[[Study], Sheet | None], ...] = (
     decision_sheet,
     inputs_sheet,
     heat_balance_sheet,
@@ -33,6 +36,9 @@ SHEETS: tuple[Callable[[Study], Sheet], ...] = (
     cash_flow_sheet,
     scenarios_sheet,
     tornado_sheet,
+    break_even_sheet,
+    draws_sheet,
+    design_choice_sheet,
     checks_sheet,
     cautions_sheet,
     hours_sheet,
@@ -40,8 +46,9 @@ SHEETS: tuple[Callable[[Study], Sheet], ...] = (
 
 
 def sheets_of(study: Study) -> list[Sheet]:
-    """Every sheet of the workbook, in order."""
-    return [sheet(study) for sheet in SHEETS]
+    """Every sheet of the workbook, in order; those of what the study does not have are left out."""
+    made = (sheet(study) for sheet in SHEETS)
+    return [sheet for sheet in made if sheet is not None]
 
 
 def workbook_bytes(study: Study) -> bytes:

@@ -62,7 +62,7 @@ def cash_flow_sheet(study: Study) -> Sheet:
         "note",
     )
     if blocks:
-        page.chart(_running_sums(study, blocks, width))
+        page.chart(_running_sums(study, page, blocks, width))
     page.freeze(4, YEAR_ZERO)
     last = year_column(calendar.time.number - 1)
     page.printed(
@@ -101,12 +101,12 @@ def _width(study: Study) -> float:
     return max(7.2, len(f"-{greatest / 1000.0:,.1f}") * 0.8 + 0.8)
 
 
-def _running_sums(study: Study, blocks: list[Block], width: float) -> Chart:
+def _running_sums(study: Study, page: Page, blocks: list[Block], width: float) -> Chart:
     """Running sum of the net flow of all options by calendar year."""
     time, currency = blocks[0].time, study.case.study.currency
     first, last = _chart_columns(blocks)
     pixels = (last - first + 1) * (width * 7.0 + 5.0)
-    points = (CALENDAR_TOP - MEASURES_TOP - 1) * ROW_POINTS + 30.0  # the headings are taller
+    points = sum(page.points(row) for row in range(MEASURES_TOP, CALENDAR_TOP - 1))
     says = [
         f"{block.name} falls to {block.flow.cumulative.min():,.0f}, ends at {block.flow.cumulative[-1]:,.0f}"
         for block in blocks

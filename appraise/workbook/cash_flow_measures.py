@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from appraise.measures import Measures, payback
-from appraise.workbook.calendar_rows import MEASURES_TOP
+from appraise.workbook.calendar_rows import MEASURES_TOP, ROW_POINTS
 from appraise.workbook.cash_flow_block import Block
 from appraise.workbook.cash_flow_calendar import TAX_LEFT
 from appraise.workbook.cells import LABEL, TOTAL, UNIT, Page
@@ -16,6 +16,7 @@ from appraise.workbook.naming import name_of
 if TYPE_CHECKING:
     from appraise.study import Study
 
+LINES_OF_WORDS = {"irr_reason": 3, "payback_note": 2, "discounted_payback_note": 2}
 NOTHING = "n/a"
 NOT_REACHED = "not reached"
 NOTHING_TO_PAY = "nothing to pay back"
@@ -67,13 +68,20 @@ class MeasuresTable:
         return row + len(self._measures(self.blocks[0])) + 2 if self.blocks else row + 2
 
     def _put(self, row: int, col: int, block: Block, measure: _Measure) -> None:
-        """The live cell and, beside it, what the run has."""
+        """The live cell and, beside it, what the run has; words stand over both columns."""
         name = name_of(measure.name, block.key)
+        if measure.style == "text":
+            self._words(row, col, name, measure)
+            return
         self.page.formula(row, col, measure.formula, measure.expect, measure.style, name)
-        kind = measure.style.split()[0]
-        if isinstance(measure.expect, str) and kind != "text":
-            kind = "text_right"
+        kind = "text_right" if isinstance(measure.expect, str) else measure.style.split()[0]
         self.page.put(row, col + 1, measure.expect, f"{kind} as run")
+
+    def _words(self, row: int, col: int, name: str, measure: _Measure) -> None:
+        """A remark, in a row as tall as the longest that its formula may come to."""
+        self.page.formula(row, col, measure.formula, measure.expect, "note_wrap", name)
+        self.page.merge(row, col, row, col + 1)
+        self.page.height(row, LINES_OF_WORDS[measure.name] * ROW_POINTS)
 
     def _measures(self, block: Block) -> list[_Measure]:
         run = self.study.measures[self.study.reference][block.option]

@@ -70,6 +70,7 @@ class Look:
     across: str = "general"
     upright: str = "center"
     wrap: bool = False
+    shrink: bool = False
     indent: int = 0
     unlocked: bool = False
 
@@ -93,14 +94,15 @@ HIGHLIGHTS: Mapping[str, Highlight] = {
     "faded": Highlight(RULE, "", bold=False, italic=True),
 }
 
+# A number that outgrows its column is written smaller, not as a row of #.
 _NUMBERS: Mapping[str, Look] = {
-    kind: Look(number_format=code, across="right") for kind, code in NUMBER_FORMATS.items()
+    kind: Look(number_format=code, across="right", shrink=True) for kind, code in NUMBER_FORMATS.items()
 }
 
 _TEXTS: Mapping[str, Look] = {
     "text": Look(across="left"),
     "text_wrap": Look(across="left", upright="top", wrap=True),
-    "text_right": Look(across="right"),
+    "text_right": Look(across="right", shrink=True),
     "text_centre": Look(across="center"),
 }
 
@@ -143,7 +145,9 @@ def _variants(kind: str, look: Look) -> dict[str, Look]:
         f"{kind} total": replace(look, bold=True, top="thin", border_colour=SLATE),
         f"{kind} bold": replace(look, bold=True),
         f"{kind} key": replace(look, bold=True, points=14, colour=SLATE, bottom="thin"),
-        f"{kind} heading": replace(look, bold=True, colour=WHITE, fill=SLATE, across="center", wrap=True),
+        f"{kind} heading": replace(
+            look, bold=True, colour=WHITE, fill=SLATE, across="center", wrap=True, shrink=False
+        ),
     }
 
 

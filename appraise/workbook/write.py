@@ -20,6 +20,7 @@ from openpyxl.worksheet.properties import PageSetupProperties
 
 from appraise.workbook.addresses import area, column, corners, ref, sheet_prefix
 from appraise.workbook.cells import (
+    DEFAULT_HEIGHT,
     DEFAULT_WIDTH,
     Cell,
     HighlightRule,
@@ -37,7 +38,6 @@ from appraise.workbook.values import clean_text, header_text, needs_prefix, stor
 STYLE_PREFIX = "Study "  # keeps the styles' names apart from those every spreadsheet program brings along
 TAB_COLOURS = {"live": SLATE, "as run": RULE, "input": ACCENT}
 HEADER_SHARE = 110  # of the 255 characters of a header or footer, what one of its texts may take
-DEFAULT_HEIGHT = 15.0  # points
 PIXELS_PER_CHARACTER, PIXELS_PER_POINT, PIXELS_PER_CM = 7.0, 96 / 72, 96 / 2.54
 A4 = 9
 LONGEST_MESSAGE = 220
@@ -148,7 +148,11 @@ def _named_style(style: str, look: Look) -> NamedStyle:
             bottom=_side(bottom, look),
         ),
         alignment=Alignment(
-            horizontal=look.across, vertical=look.upright, wrap_text=look.wrap, indent=look.indent
+            horizontal=look.across,
+            vertical=look.upright,
+            wrap_text=look.wrap,
+            shrink_to_fit=look.shrink,
+            indent=look.indent,
         ),
         number_format=look.number_format,
         protection=Protection(locked=not look.unlocked),
