@@ -66,6 +66,6 @@ def progress_bar(shown: bool) -> Iterator[Progress]:
         def advance(fraction: float, label: str) -> None:
             bar.label = f"{label:<24.24}"
             bar.update(max(0, round(1000 * fraction) - bar.pos))
-            bar.renderprogress()
+            bar.render_progress()
 
         yield advance

@@ -21,7 +21,7 @@ _FLOORS = """
     cycle.condensers cycle.turbine cycle.plant cycle.feedwater cycle.stages cycle.shells cycle.energy
     cycle.task cycle.sliding cycle.passes cycle.solve cycle.calibrate cycle.design cycle.limits cycle.balance
     demand operate year sizing
-    correlations published_costs item_money capex
+    correlations published_costs item_money capex estimates
     prices timeline cash_flow measures emissions
     trade chain moves sensitivity levers sampling response draws grid optimum checks study
     workbook

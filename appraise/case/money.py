@@ -143,6 +143,7 @@ class CapexItem(Table):
     low: Annotated[float, Within(-1, 0)] = -0.2
     high: Annotated[float, Within(0, 10)] = 0.3
     source: AnyText = ""
+    compare: MaybeTexts = None  # published correlations to set beside it; they enter no total
 
     def contradictions(self) -> Iterator[tuple[str, str]]:
         """Exactly one way to its cost."""

@@ -213,6 +213,7 @@ WORDS: Mapping[str, Mapping[str, str]] = MappingProxyType(
             "low": "accuracy, low",
             "high": "accuracy, high",
             "source": "source",
+            "compare": "compared with",
         },
         "Capex": {
             "items": "items",
