@@ -56,7 +56,14 @@ def _one(
 ) -> Estimate:
     asked = Correlation(name=name)
     stand_in = item.model_copy(
-        update={"amount": None, "correlation": asked, "currency": None, "year": None, "only": (option,)}
+        update={
+            "amount": None,
+            "correlation": asked,
+            "currency": None,
+            "year": None,
+            "only": (option,),
+            "source": "",
+        }
     )
     capex = case.capex.model_copy(update={"items": (stand_in,), "multiplier": 1.0})
     try:

@@ -24,6 +24,7 @@ def study_json(study: Study) -> dict[str, Any]:
         "design_point": plain(study.balances, "design_point"),
         "year": plain([one for row in study.year_figures for one in row], "year"),
         "capex": plain(study.capital, "capex"),
+        "estimates": plain(study.estimates, "estimates"),
         "cash_flow": [
             _flow(study, flow, told)
             for run, row in zip(study.runs, study.measures, strict=True)

@@ -18,6 +18,7 @@ from appraise.cycle.design import design
 from appraise.cycle.limits import boiling_problems, steam_problems
 from appraise.draws import FEWEST_CHECKED, Risk, risk
 from appraise.errors import CaseError
+from appraise.estimates import Estimate, estimates
 from appraise.grid import BreakEvenGrid, break_even_grid
 from appraise.measures import Measures, measures
 from appraise.moves import Move, gain_moves
@@ -56,6 +57,7 @@ class Study:
     physics: Physics
     balances: tuple[Balance, ...]
     capital: tuple[OptionCapital, ...]
+    estimates: tuple[Estimate, ...]
     runs: tuple[ScenarioRun, ...]
     measures: tuple[tuple[Measures, ...], ...]  # [scenario][option]
     year_figures: tuple[tuple[YearFigures, ...], ...]  # [scenario][option]
@@ -153,6 +155,7 @@ def run_study(
         physics=physics,
         balances=design_balances(case, physics.design),
         capital=bought,
+        estimates=estimates(case, physics.sizes),
         runs=runs,
         measures=told,
         year_figures=figures,

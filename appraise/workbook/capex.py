@@ -8,6 +8,8 @@ from math import ceil
 from typing import TYPE_CHECKING
 
 from appraise.capex import OptionCapital, estimate_class
+from appraise.workbook.capex_estimates import TITLE as ESTIMATES_TITLE
+from appraise.workbook.capex_estimates import put_estimates
 from appraise.workbook.capex_items import AMOUNT, HIGH, LAST, LOW, Rows, put_blocks, put_factors, section
 from appraise.workbook.capex_sizes import TITLE as SIZES_TITLE
 from appraise.workbook.capex_sizes import put_sizes
@@ -308,4 +310,8 @@ class _Capex:
         """What was sized, and by which hour or the design point."""
         if any(one.stages for one in self.study.physics.sizes):
             section(self.page, row, SIZES_TITLE)
-            self.ends.append(put_sizes(self.page, row + 1, self.study))
+            row = put_sizes(self.page, row + 1, self.study)
+            self.ends.append(row)
+        if self.study.estimates:
+            section(self.page, row, ESTIMATES_TITLE)
+            self.ends.append(put_estimates(self.page, row + 1, self.study))

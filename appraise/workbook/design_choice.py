@@ -33,7 +33,7 @@ KINDS = {
     "existing_area_factor": "number2",
 }
 DRAWN = ("terminal_difference_K", "shares")  # curves with a chart
-STATED_SLOT = 1  # a diamond, unlike the points of the curve
+STATED_SLOT = 1
 
 
 def design_choice_sheet(study: Study) -> Sheet | None:
@@ -227,7 +227,7 @@ class _Choice:
         assert curve.best is not None
         chart = scatter_chart(
             curve.label,
-            [Series("values tried", TITLE, npv, x=values, markers=True), stated],
+            [Series("other values", TITLE, npv, x=values), stated],
             x=Axis(
                 "share of the rise" if share else f"terminal difference, {curve.unit}", "0%" if share else "0"
             ),
@@ -237,7 +237,7 @@ class _Choice:
             anchor=anchor,
             size_cm=(width, CHART_CM),
         )
-        self.page.chart(replace(chart, points=REDUCED_CHART_POINTS - 1.5))
+        self.page.chart(replace(chart, points=REDUCED_CHART_POINTS - 1.5, legend=False))
 
 
 def same(value: object, other: object) -> bool:

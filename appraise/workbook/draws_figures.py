@@ -14,6 +14,7 @@ from appraise.workbook.cells import LABEL, TOTAL, UNIT, Page, area
 SHARES = tuple(round(0.01 * k, 2) for k in range(101))
 WANTED_BINS = 32
 TAIL = 0.25  # per cent of the draws at either end that go into the first and the last bin
+TINY = 1e-6  # of the values, or of a unit of money: the narrowest bin there can be
 _NICE = (1.0, 2.0, 2.5, 5.0, 10.0)
 
 
@@ -34,11 +35,14 @@ class Bins:
 
 
 def bins_of(values: Array) -> Bins:
-    """Up to 32 bins or so of round width over values [draw]."""
+    """Up to 32 bins or so of round width over values [draw]; losses and gains never share one."""
     low, high = (float(v) for v in np.percentile(values, [TAIL, 100.0 - TAIL]))
-    step = (
-        round_step((high - low) / WANTED_BINS) if high > low else round_step(max(abs(low), 1.0) / WANTED_BINS)
-    )
+    # The open bins at the ends must not mix losses with gains: zero is an edge where there are both.
+    if values.min() < 0.0 <= low:
+        low = -TINY
+    if high < 0.0 <= values.max():
+        high = 0.0
+    step = round_step(max((high - low) / WANTED_BINS, TINY * max(abs(low), abs(high)), TINY))
     first, last = int(np.floor(low / step)), int(np.floor(high / step)) + 1
     edges = np.arange(first, last + 1) * step
     place = np.clip(np.floor(values / step).astype(int) - first, 0, last - first - 1)
