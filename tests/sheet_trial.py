@@ -29,6 +29,7 @@ class Money:
     case: Case
     capital: tuple[OptionCapital, ...]
     physics: Unsized = Unsized()
+    estimates: tuple[object, ...] = ()
 
 
 def address_of(sheets: Sequence[Sheet], name: str) -> tuple[str, str]:

@@ -133,7 +133,7 @@ class Block:
             page.formula(row, TOTAL, power, float(self.grid.power_price[offset]), "number2 heading")
             if factor == 1.0:
                 page.put(row, LABEL, "power price as stated ►", "text_right bold")
-                page.put(self.last + 1, col, "▲ fuel as stated", "text_right bold")
+                page.put(self.last + 1, col, "▲ as stated", "text_right bold")
         page.put(self.first, LABEL, "Power price down", "label")
 
     def _cells(self) -> None:
