@@ -1,8 +1,8 @@
 """What calibrating on one steady test does to the gain, as JSON:  python tests/benchmarks/calibration.py
 
 The true plant is the demo with a fouled condenser, 6 K at the design point. Its power and exhaust pressure at
-one operating point are the test. A case that states 3 K is then calibrated on it, with and without the exhaust
-pressure, and the gain of every option over the year is compared with that of the true plant.
+one operating point are the test. A case that states 3 K is then calibrated on it, with and without the
+exhaust pressure, and the gain of every option over the year is compared with that of the true plant.
 """
 
 import os
