@@ -1,6 +1,12 @@
 """What every test has: arithmetic that raises, steady draws of examples, the demo study, solved once."""
 
+import os
 from collections.abc import Iterator
+
+# One thread and one process for each worker: they share the processors already.
+os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
+if "PYTEST_XDIST_WORKER" in os.environ:
+    os.environ.setdefault("APPRAISE_PROCESSES", "1")
 
 import numpy as np
 import pytest

@@ -723,12 +723,12 @@ class Terminal(io.StringIO):
 def test_progress_is_for_who_watches(monkeypatch: pytest.MonkeyPatch) -> None:
     for stream, shown in ((Terminal(), True), (io.StringIO(), False)):
         monkeypatch.setattr(sys, "stderr", stream)
-        with cli._progress(shown=True) as advance:
+        with cli.progress_bar(shown=True) as advance:
             advance(0.25, "heat of the year")
             advance(1.0, "checks")
         assert ("heat of the year" in stream.getvalue()) is shown
         assert ("100%" in stream.getvalue()) is shown
     monkeypatch.setattr(sys, "stderr", Terminal())
-    with cli._progress(shown=False) as advance:
+    with cli.progress_bar(shown=False) as advance:
         advance(0.5, "anything")
     assert sys.stderr.getvalue() == ""

@@ -36,7 +36,7 @@ def wider(loaded: LoadedCase) -> dict[str, Any]:
     for item in data["capex"]["items"]:
         if "two-stage" in item.get("only", ()):
             item["only"] += [PUMPED["key"], THREE["key"]]
-    data["drivers"] = []
+    data["drivers"], data["draws"] = [], {}
     return data
 
 
@@ -244,7 +244,7 @@ def test_the_baseline_competes_and_of_equals_the_first_is_best() -> None:
 def test_progress_rises_to_what_is_left(marrowby: LoadedCase, tmp_path: Path) -> None:
     heard: list[tuple[float, str]] = []
     data = copy.deepcopy(dict(marrowby.data))
-    data["options"], data["drivers"] = data["options"][:2], []
+    data["options"], data["drivers"], data["draws"] = data["options"][:2], [], {}
     for item in data["capex"]["items"]:
         item["only"] = ["single-large"]
     (tmp_path / marrowby.hours_path.name).write_bytes(marrowby.hours_path.read_bytes())
