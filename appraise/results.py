@@ -24,6 +24,7 @@ def study_json(study: Study) -> dict[str, Any]:
         "design_point": plain(study.balances, "design_point"),
         "year": plain([one for row in study.year_figures for one in row], "year"),
         "capex": plain(study.capital, "capex"),
+        "emissions": [_emissions(study, index) for index in range(len(study.balances))],
         "estimates": plain(study.estimates, "estimates"),
         "cash_flow": [
             _flow(study, flow, told)
@@ -54,6 +55,23 @@ def _about(study: Study) -> dict[str, Any]:
         "version": __version__,
         "case_sha256": loaded.case_sha256,
         "hours_sha256": loaded.hours_sha256,
+    }
+
+
+def _emissions(study: Study, index: int) -> dict[str, Any]:
+    """Stack CO2 and primary energy of the first operating year in the reference scenario."""
+    from appraise.emissions import HIGH_EFFICIENCY_SAVING, carbon_change, plant_saving
+
+    f = study.year_figures[study.reference][index]
+    change = carbon_change(study.case, f.extra_power_MWh, f.extra_fuel_MWh, f.extra_peak_fuel_MWh)
+    saving = plant_saving(study.case, f.heat_MWh, f.power_gross_MWh, f.fuel_MWh)
+    return {
+        "option": f.option,
+        "co2_t": f.co2_t,
+        "co2_change_t": float(change.stack),
+        "co2_change_with_displaced_power_t": float(change.with_displaced),
+        "primary_energy_saving": saving,
+        "high_efficiency_from": HIGH_EFFICIENCY_SAVING,
     }
 
 

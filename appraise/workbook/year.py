@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Sequence
 
-from appraise.emissions import carbon_change, plant_saving
+from appraise.emissions import HIGH_EFFICIENCY_SAVING, carbon_change, plant_saving
 from appraise.study import Study
 from appraise.trade import YearFigures
 from appraise.workbook.cells import LABEL, TOTAL, UNIT, Page, Sheet, area, column
@@ -157,6 +157,10 @@ def _carbon_lines(study: Study, figures: Sequence[YearFigures]) -> Iterator[Line
     yield Line("Change against the baseline", "t", "number1", [float(c.stack) for c in changes])
     yield Line("Change with grid power displaced", "t", "number1", [float(c.with_displaced) for c in changes])
     yield Line("Primary energy saving of the plant", "", "percent1", saving)
+    yield Line("  least for high efficiency", "", "percent1", [HIGH_EFFICIENCY_SAVING] * len(saving))
+    reference = study.case.emissions
+    yield Line("  reference efficiency, heat", "", "percent1", [reference.heat_reference] * len(saving))
+    yield Line("  reference efficiency, power", "", "percent1", [reference.power_reference] * len(saving))
 
 
 def _by_scenario(page: Page, row: int, study: Study, last_col: int) -> tuple[int, tuple[int, int]]:
