@@ -25,7 +25,7 @@ _FLOORS = """
     prices timeline cash_flow measures emissions
     trade chain moves sensitivity levers sampling response draws grid optimum checks study
     workbook
-    tables output results files starting console cli __main__
+    tables output results files reference_keys reference_schema reference starting console cli __main__
 """
 FLOORS = _FLOORS.split()
 
