@@ -6,7 +6,7 @@ them compute the same thing.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Hashable
+from collections.abc import Callable, Hashable, Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -14,6 +14,7 @@ import numpy as np
 from appraise.capex import OptionCapital, capital
 from appraise.case.hours import Hours
 from appraise.case.load import Case
+from appraise.case.plant import Option
 from appraise.cash_flow import CashFlow, cash_flow
 from appraise.cycle.design import Design, design
 from appraise.cycle.limits import steam_problems
@@ -33,6 +34,8 @@ class Physics:
     """Everything of a case that prices do not touch, in the order of its options."""
 
     key: Hashable
+    option_keys: Mapping[str, Hashable]
+    hours: Hours
     design: Design
     years: Years
     sizes: tuple[OptionSize, ...]
@@ -44,8 +47,19 @@ def physics_key(case: Case) -> Hashable:
     return (case.plant, case.tail, case.new_condenser, case.options, case.network, case.year, horizon)
 
 
+def option_key(case: Case, option: Option) -> Hashable:
+    """The part of a case that one option's year depends on, beside the baseline."""
+    equipment = (case.tail_of(option), case.new_condenser_of(option)) if option.stages > 1 else ()
+    horizon = case.study.years if changes(case) else 0
+    # Availability and meters come in after the hours are solved.
+    year = case.year.model_copy(update={"availability": 1.0, "metered": None})
+    return (case.plant, case.network, year, case.baseline, option, equipment, horizon)
+
+
 def solve_physics(case: Case, hours: Hours, known: Physics | None = None) -> Physics:
     """Design point, year and sizes; `known` is handed back where it is the same plant in the same year.
+
+    Where only some options differ from those of `known`, in the same hours, only they are run again.
 
     Raises CaseError where the steam tables or the design point refuse the case, SolveError where an hour
     has no solution.
@@ -57,12 +71,25 @@ def solve_physics(case: Case, hours: Hours, known: Physics | None = None) -> Phy
     if problems:
         raise CaseError(problems)
     made = design(case)
-    years = solve_years(case, hours, made)
+    keys = {option.key: option_key(case, option) for option in case.options}
+    years = _years(case, hours, made, keys, known)
     sizes = tuple(
         option_size(option, made.plant, tuple(solved[i] for solved in years.solved))
         for i, option in enumerate(made.options)
     )
-    return Physics(key, made, years, sizes)
+    return Physics(key, keys, hours, made, years, sizes)
+
+
+def _years(
+    case: Case, hours: Hours, made: Design, keys: Mapping[str, Hashable], known: Physics | None
+) -> Years:
+    """The years, with the runs of options that `known` has already."""
+    if known is None or known.hours is not hours:
+        return solve_years(case, hours, made)
+    same = {key for key, value in keys.items() if known.option_keys.get(key) == value}
+    if case.baseline.key not in same:
+        return solve_years(case, hours, made)
+    return solve_years(case, hours, made, known.years, same)
 
 
 @dataclass(frozen=True, slots=True, eq=False)

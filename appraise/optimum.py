@@ -17,7 +17,7 @@ from scipy.interpolate import CubicSpline
 from appraise.case.hours import Hours
 from appraise.case.load import Case
 from appraise.case.plant import Option
-from appraise.chain import case_npv
+from appraise.chain import case_npv, solve_physics
 from appraise.demand import demand
 from appraise.errors import AppraiseError
 from appraise.response import part_of
@@ -100,6 +100,11 @@ class _Choice:
     def __init__(self, case: Case, hours: Hours, option: Option, stated_npv: float) -> None:
         self.case, self.option, self.stated = case, option, stated_npv
         self.hours = part_of(hours, demand(case, hours).heat_MW, _HOUR_STEP)
+        self.known = solve_physics(self._case(option), self.hours)
+
+    def _case(self, option: Option) -> Case:
+        """The case with one option beside the baseline."""
+        return self.case.model_copy(update={"options": (self.case.baseline, option)})
 
     def made(self) -> DesignChoice:
         """Solve every point and sum up."""
@@ -163,9 +168,9 @@ class _Choice:
         option = self.option.model_copy(update=dict(edit))
         if option.stages < 2:
             return _Point(None, "one stage has no tail section: that is the baseline, or more surface on it")
-        case = self.case.model_copy(update={"options": (self.case.baseline, option)})
+        case = self._case(option)
         try:
-            npv = case_npv(case, self.hours, case.study.reference_scenario)
+            npv = case_npv(case, self.hours, case.study.reference_scenario, self.known)
         except AppraiseError as error:
             return _Point(None, str(error))
         return _Point(float(npv[1]), None)

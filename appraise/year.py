@@ -5,6 +5,7 @@ Arrays are [hour], before availability, 0 where the plant stands still.
 
 from __future__ import annotations
 
+from collections.abc import Container
 from dataclasses import dataclass, fields
 from typing import TypeVar
 
@@ -100,12 +101,14 @@ class Years:
     """The operating years that were solved, and how to get at those between.
 
     knots : operating years that were solved; one, where nothing changes. solved : [knot][option].
+    near : [knot], hours in which the baseline runs or is near its least flow.
     shares : availability of each option's own operation.
     """
 
     baseline: int
     knots: tuple[int, ...]
     solved: tuple[tuple[OptionYear, ...], ...]
+    near: tuple[Mask, ...]
     shares: tuple[float, ...]
     demand_MWh: float  # of the first operating year
 
@@ -114,18 +117,28 @@ class Years:
         return lagrange_weights(np.array(self.knots, dtype=float), np.arange(number, dtype=float))
 
 
-def solve_years(case: Case, hours: Hours, made: Design) -> Years:
+def solve_years(
+    case: Case, hours: Hours, made: Design, known: Years | None = None, same: Container[str] = ()
+) -> Years:
     """Solve the operating years that differ: one where nothing changes, else first, middle and last.
 
-    What lies between follows from the polynomial through them.
+    What lies between follows from the polynomial through them. known : years of a case with the same
+    baseline in the same hours, from which the options whose keys are in `same` are taken as they are.
     """
     last = case.study.years - 1
     knots = tuple(sorted({0, last // 2, last})) if changes(case) else (0,)
     asked = [demand(case, hours, k) for k in knots]
+    solved, near = [], []
+    for number, one in enumerate(asked):
+        before = None if known is None else (known.near[number], known.solved[number])
+        runs, tried = solve_year(one, made, case.year.extra_running, before, same)
+        solved.append(runs)
+        near.append(tried)
     return Years(
         baseline=next(i for i, option in enumerate(case.options) if option.baseline),
         knots=knots,
-        solved=tuple(solve_year(one, made, case.year.extra_running) for one in asked),
+        solved=tuple(solved),
+        near=tuple(near),
         shares=tuple(
             case.year.availability * (case.tail_of(option).availability if option.stages > 1 else 1.0)
             for option in case.options
@@ -142,19 +155,41 @@ def lagrange_weights(knots: Array, x: Array) -> Array:
     ).T
 
 
-def solve_year(asked: Demand, made: Design, extra_running: bool) -> tuple[OptionYear, ...]:
-    """Run every option through the hours of one operating year, in the case's order."""
-    wanted = asked.available & (asked.heat_MW > 0) & (asked.heat_MW >= least_heat(made, _SURELY_OFF))
-    base_run = operate(made, made.baseline, asked, wanted)
-    base = _option_year(made, made.baseline, asked, base_run, None, extra_running)
-    near = np.zeros_like(wanted)
-    near[base_run.hour] = base_run.solution.feed.live_steam_kg_s >= _NEAR_LEAST_FLOW * made.plant.min_kg_s
+def solve_year(
+    asked: Demand,
+    made: Design,
+    extra_running: bool,
+    known: tuple[Mask, tuple[OptionYear, ...]] | None = None,
+    same: Container[str] = (),
+) -> tuple[tuple[OptionYear, ...], Mask]:
+    """Run every option through the hours of one operating year, in the case's order.
+
+    Returns the runs, and the hours in which the baseline runs or is near its least flow.
+    known : both of a year with the same baseline, where there is one; its options in `same` are taken over.
+    """
+    base_key = made.baseline.train.key
+    if known is None:
+        base, near = _baseline_year(asked, made, extra_running)
+        done = {base_key: base}
+    else:
+        near = known[0]
+        done = {one.key: one for one in known[1] if one.key == base_key or one.key in same}
     return tuple(
-        base
-        if option.train.key == base.key
-        else _option_year(made, option, asked, operate(made, option, asked, near), base, extra_running)
+        done[option.train.key]
+        if option.train.key in done
+        else _option_year(
+            made, option, asked, operate(made, option, asked, near), done[base_key], extra_running
+        )
         for option in made.options
-    )
+    ), near
+
+
+def _baseline_year(asked: Demand, made: Design, extra_running: bool) -> tuple[OptionYear, Mask]:
+    wanted = asked.available & (asked.heat_MW > 0) & (asked.heat_MW >= least_heat(made, _SURELY_OFF))
+    run = operate(made, made.baseline, asked, wanted)
+    near = np.zeros_like(wanted)
+    near[run.hour] = run.solution.feed.live_steam_kg_s >= _NEAR_LEAST_FLOW * made.plant.min_kg_s
+    return _option_year(made, made.baseline, asked, run, None, extra_running), near
 
 
 def _option_year(

@@ -11,6 +11,8 @@ import pytest
 from cases import toml_text
 
 from appraise.case.load import LoadedCase, case_from, load_case
+from appraise.case.paths import changed
+from appraise.chain import solve_physics
 from appraise.output import plain
 from appraise.study import Comparison, Study, balances, point_balances, run_study
 
@@ -255,3 +257,21 @@ def test_progress_rises_to_what_is_left(marrowby: LoadedCase, tmp_path: Path) ->
     assert fractions == sorted(fractions)
     assert 0.0 == fractions[0] < fractions[-1] < 1.0
     assert all(label for _, label in heard)
+
+
+def test_what_depends_on_nothing_changed_is_not_solved_again(marrowby: LoadedCase) -> None:
+    """A tail leaves single stages alone, availability all hours; results are those of a fresh solve."""
+    case, data, hours = marrowby.case, marrowby.data, marrowby.hours
+    known = solve_physics(case, hours)
+    for path, value, kept in (
+        ("tail.efficiency", 0.77, (True, True, False, False)),
+        ("year.availability", 0.9, (True, True, True, True)),
+        ("plant.turbine.efficiency", 0.83, (False, False, False, False)),
+    ):
+        edited = case_from(changed(case, data, path, value))
+        again, fresh = solve_physics(edited, hours, known), solve_physics(edited, hours)
+        pairs = zip(again.years.solved[0], known.years.solved[0], strict=True)
+        assert tuple(mine is before for mine, before in pairs) == kept
+        for mine, theirs in zip(again.years.solved[0], fresh.years.solved[0], strict=True):
+            assert (mine.power_net_MW == theirs.power_net_MW).all()
+        assert again.sizes == fresh.sizes
