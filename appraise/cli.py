@@ -17,14 +17,18 @@ import click
 
 from appraise import __version__
 from appraise.console import STANDARD_OUTPUT, check_targets, default_out, deliver, files, progress_bar
-from appraise.errors import AppraiseError, CaseError, FileProblem
+from appraise.errors import AppraiseError, CaseError, FileProblem, SolveError
 
 if TYPE_CHECKING:
-    from appraise.case.load import LoadedCase
+    from appraise.case.load import Case, LoadedCase
+    from appraise.cycle.balance import Balance
 
 # The matrices here are so small that threads of the linear algebra library only wait for one another: on a
 # busy machine they take four times as long. It reads this when numpy is imported, which comes later.
 os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
+
+
+MOST_HEAT = 10.0  # of `--at`, over the design point's; far above what any plant can do
 
 
 class Point(NamedTuple):
@@ -153,9 +157,9 @@ def balance(case_path: Path, key: str | None, point: Point | None, json_path: Pa
     loaded = load_case(case_path)
     _check_key(loaded, key)
     check_targets(loaded, *files(json_path))
-    from appraise.study import balances, point_balances
+    from appraise.study import balances
 
-    solved = balances(loaded.case) if point is None else point_balances(loaded.case, *point)
+    solved = balances(loaded.case) if point is None else _balances_at(loaded.case, point)
     chosen = [one for one in solved if key in (None, one.key)]
     text = output.json_text(output.balance_json(chosen))
     if json_path != STANDARD_OUTPUT:
@@ -255,6 +259,25 @@ def _point_title(loaded: LoadedCase, point: Point | None) -> str:
     at = point or Point(design.heat_MW, design.supply_C, design.return_C)
     name = "design point" if point is None else "off design"
     return f"{loaded.case.study.title}, {name}: {at.heat_MW:g} MW, {at.supply_C:g}/{at.return_C:g} °C"
+
+
+def _balances_at(case: Case, point: Point) -> tuple[Balance, ...]:
+    """Balances at the point of `--at`. A point that cannot be is a wrong call, no fault of the case."""
+    from appraise.cycle.limits import boiling_problems, steam_problems
+    from appraise.study import point_balances
+
+    design_MW = case.plant.design.heat_MW
+    if point.heat_MW > MOST_HEAT * design_MW:
+        allowed = f"at most {MOST_HEAT:g} times the design point's {design_MW:g} MW"
+        raise click.UsageError(f"--at: heat is {point.heat_MW:g} MW; allowed is {allowed}")
+    if not steam_problems(case, None):
+        for problem in boiling_problems(case, "supply", point.supply_C):
+            raise click.UsageError(f"--at: {problem}")
+    try:
+        return point_balances(case, *point)
+    except SolveError as error:
+        at = f"{point.heat_MW:g} MW, {point.supply_C:g}/{point.return_C:g} °C"
+        raise SolveError(f"no heat balance at {at}: {error}") from error
 
 
 def _check_key(loaded: LoadedCase, key: str | None) -> None:

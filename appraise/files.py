@@ -20,6 +20,8 @@ def check_target(path: Path) -> None:
         raise FileProblem(f"{path}: cannot be written, it is a folder")
     if path.exists() and not path.is_file():
         raise FileProblem(f"{path}: cannot be written, it is not a regular file")
+    if path.exists() and not (path.stat().st_mode & 0o222 and os.access(path, os.W_OK)):
+        raise FileProblem(f"{path}: cannot be written, it is read-only")
     above = next(parent for parent in path.absolute().parents if parent.exists())
     if not above.is_dir():
         raise FileProblem(f"{path}: cannot be written, {above} is not a folder")
@@ -31,25 +33,62 @@ def write_whole(contents: Mapping[Path, bytes]) -> None:
     """Write several files, each complete, or none.
 
     Every content goes to a temporary file beside its target first; only when all of them are on the disk do
-    they take their names. An existing target keeps its permissions, and a link stays a link.
+    they take their names. Where that fails or is interrupted half-way, those that had taken theirs give them
+    back to the files that were there. An existing target keeps its permissions, and a link stays a link.
     Raises FileProblem.
     """
     for path in contents:
         check_target(path)
     waiting: dict[Path, Path] = {}
+    kept: dict[Path, Path] = {}
+    begun: list[Path] = []
     try:
         for path, data in contents.items():
             target = path.resolve()
-            waiting[path] = target.with_name(f".{target.name}.{secrets.token_hex(4)}.tmp")
+            waiting[path] = _beside(target, "tmp")
             _write_through(waiting[path], target, data)
+        for path in contents:
+            _keep(path.resolve(), kept)
         for path, temporary in waiting.items():
-            os.replace(temporary, path.resolve())
-    except OSError as error:
-        raise FileProblem(f"{path}: cannot be written, {error.strerror or error}") from error
+            begun.append(path.resolve())
+            os.replace(temporary, begun[-1])
+    except BaseException as error:
+        _restore(begun, kept)
+        if isinstance(error, OSError):
+            raise FileProblem(f"{path}: cannot be written, {error.strerror or error}") from error
+        raise
     finally:
-        for temporary in waiting.values():
+        for temporary in (*waiting.values(), *kept.values()):
             with suppress(OSError):
                 temporary.unlink(missing_ok=True)
+
+
+def _beside(target: Path, ending: str) -> Path:
+    """A name that no other file has, in the folder of the target."""
+    return target.with_name(f".{target.name}.{secrets.token_hex(4)}.{ending}")
+
+
+def _keep(target: Path, kept: dict[Path, Path]) -> None:
+    """Give an existing target a second name; where the disk knows no such thing, a copy."""
+    if not target.exists():
+        return
+    kept[target] = _beside(target, "old")
+    try:
+        os.link(target, kept[target])
+    except OSError:
+        shutil.copy2(target, kept[target])
+
+
+def _restore(begun: list[Path], kept: dict[Path, Path]) -> None:
+    """Give every target back what it was; a kept file that cannot go back stays where it is."""
+    for target in begun:
+        with suppress(OSError):
+            old = kept.pop(target, None)
+            if old is None:
+                target.unlink(missing_ok=True)
+            else:
+                os.replace(old, target)
+                old.unlink(missing_ok=True)  # two names of one file, where nothing had been replaced
 
 
 def _write_through(temporary: Path, target: Path, data: bytes) -> None:

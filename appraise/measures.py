@@ -6,6 +6,7 @@ rate of return that does not exist says why. The net present value decides, the 
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -215,9 +216,10 @@ def levelised_cost(flow: CashFlow) -> float | None:
 
 
 def break_even_scale(flow: CashFlow, line: Array) -> float | None:
-    """Factor on a taxed line [t] at which NPV = 0; None where the line is worth nothing."""
+    """Factor on a taxed line [t] at which NPV = 0; None where the line is worth nothing, or next to it."""
     worth = after_tax(flow, line)
-    return None if worth == 0.0 else 1.0 - float(flow.npv) / worth
+    scale = math.inf if worth == 0.0 else 1.0 - float(flow.npv) / worth
+    return scale if math.isfinite(scale) else None
 
 
 def break_even_price(flow: CashFlow, path: Array, line: Array) -> float | None:

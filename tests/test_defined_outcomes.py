@@ -130,6 +130,13 @@ def test_an_option_that_cannot_be_built_is_named(tmp_path: Path) -> None:
     assert told[0].startswith("options.two-stage: cannot be built: the shell of stage 1 needs ")
 
 
+def test_a_tail_without_a_pressure_drop_is_named(tmp_path: Path) -> None:
+    """Its inlet loss takes more than the two condensers are apart."""
+    told = refusal(loaded_with(tmp_path, tail__inlet_loss_share=0.49, plant__design__return_C=88.0))
+    assert len(told) == 1
+    assert told[0].startswith("options.two-stage: cannot be built: the tail section into stage 1 has ")
+
+
 def test_a_design_point_over_the_limits_only_warns(tmp_path: Path) -> None:
     loaded = loaded_with(tmp_path, plant__live_steam__max_kg_s=15.0)
     made = design(loaded.case)

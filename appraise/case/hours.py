@@ -15,9 +15,7 @@ from datetime import datetime
 import numpy as np
 from numpy.typing import NDArray
 
-from appraise.case.kinds import (
-    Within,
-)
+from appraise.case.kinds import LARGEST, Within
 from appraise.case.words import listed, nearest, shown
 from appraise.errors import CaseError, Problem
 
@@ -187,6 +185,7 @@ def _numbers(texts: Sequence[str], kind: Within, column: str, name: str) -> tupl
         good = np.array([bool(_NUMBER.fullmatch(text.strip())) for text in texts])
         values = np.array([float(text) if ok else np.nan for text, ok in zip(texts, good, strict=True)])
         good &= np.isfinite(values)
+    good &= np.abs(values) <= LARGEST
     if kind.low is not None:
         good &= values >= kind.low
     if kind.high is not None:
@@ -195,9 +194,10 @@ def _numbers(texts: Sequence[str], kind: Within, column: str, name: str) -> tupl
     def problem(index: int) -> Problem:
         text = texts[index].strip()
         given = "empty cell" if not text else f"{text if _NUMBER.fullmatch(text) else shown(text)} given"
+        size = f", in size at most {LARGEST:g}" if LARGEST < abs(values[index]) < np.inf else ""
         comma = ", with a decimal point" if re.fullmatch(r"[+-]?\d+,\d+", text) else ""
         return Problem(
-            f"{name} row {index + FIRST_ROW}, {column}", f"{given}; allowed: {kind.allowed}{comma}"
+            f"{name} row {index + FIRST_ROW}, {column}", f"{given}; allowed: {kind.allowed}{comma}{size}"
         )
 
     return values, list(_some(np.flatnonzero(~good), problem, f"{name}, {column}", "such cells"))

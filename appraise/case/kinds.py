@@ -20,6 +20,10 @@ Place = tuple[int | str, ...]
 
 SUM_TOLERANCE = 1e-9  # on shares that must sum to 1
 
+# No plant and no money has numbers beyond these; with them products overflow and quotients are infinite. What
+# may be 0 has no least size: it may be what is left of 0 in the program that wrote the file.
+SMALLEST, LARGEST = 1e-9, 1e15
+
 
 def fault(message: str) -> PydanticCustomError:
     """One fault of the value at hand."""
@@ -90,6 +94,9 @@ class Within(Kind):
         fits = is_number(value) and (isinstance(value, float) or abs(value) < 1 << 1023)
         if not fits or not self.holds(value):
             raise fault(said(value, self.allowed))
+        if abs(value) > LARGEST or (self.above and value < SMALLEST):
+            size = f"from {SMALLEST:g} to {LARGEST:g}" if self.above else f"at most {LARGEST:g}"
+            raise fault(said(value, f"{self.allowed}, in size {size}"))
         return float(value)
 
 
@@ -253,11 +260,12 @@ class Change(Kind):
         return 'a number, or a text like "-20%"'
 
     def __call__(self, value: Any) -> float | str:
-        if is_number(value) and math.isfinite(value):
+        if is_number(value) and abs(value) <= LARGEST:
             return float(value)
         if isinstance(value, str) and re.fullmatch(r"[+-]?\d+(\.\d+)?\s*%", value.strip(), re.ASCII):
             return value.strip()
-        raise fault(said(value, self.allowed))
+        size = f", in size at most {LARGEST:g}" if is_number(value) else ""
+        raise fault(said(value, self.allowed + size))
 
 
 _EFFICIENCY = Within(0, 1, above=True)
@@ -272,6 +280,7 @@ MaybeEfficiency = Annotated[float | None, _EFFICIENCY]
 Share = Annotated[float, Within(0, 1)]
 MaybeShare = Annotated[float | None, Within(0, 1)]
 LossShare = Annotated[float, Within(0, 0.5, below=True)]
+PressureBar = Annotated[float, Within(0.01)]  # below it the steam tables soon end
 WaterC = Annotated[float, Within(0, 200)]
 OffsetK = Annotated[float, Within(-100, 100)]
 DifferenceK = Annotated[float, Within(0, 50, above=True)]

@@ -25,6 +25,7 @@ from appraise.case.kinds import (
     NotNegative,
     OneOf,
     Positive,
+    PressureBar,
     Share,
     Text,
     WaterC,
@@ -97,10 +98,10 @@ class Heater(Table):
 class Feed(Table):
     """Deaerator, bleeds and pumps."""
 
-    deaerator_bar: Positive
-    bleed_bar: Positive
+    deaerator_bar: PressureBar
+    bleed_bar: PressureBar
     deaerator_control: Annotated[str, OneOf(("fixed", "sliding"))] = "fixed"
-    deaerator_minimum_bar: Positive = 1.2
+    deaerator_minimum_bar: PressureBar = 1.2
     pump_efficiency: Efficiency = 0.75
     heater: Heater | None = None
 
@@ -136,7 +137,7 @@ class Condenser(Table):
 class DesignPoint(Table):
     """The point at which everything is sized: turbine condensers alone."""
 
-    heat_MW: Positive
+    heat_MW: Annotated[float, Within(0.01)]
     supply_C: WaterC
     return_C: WaterC
 
@@ -168,7 +169,7 @@ class Measured(Table):
     supply_C: WaterC
     return_C: WaterC
     power_MW: Positive
-    exhaust_bar: MaybePositive = None
+    exhaust_bar: Annotated[float | None, Within(0.01)] = None
     live_steam_kg_s: MaybePositive = None
 
     def contradictions(self) -> Iterator[tuple[str, str]]:
@@ -252,7 +253,7 @@ class Option(Table):
     key: Key
     name: Text
     stages: Annotated[int, Whole(1, 6)]
-    existing_area_factor: Annotated[float, Within(0, 10, above=True)] = 1.0
+    existing_area_factor: Annotated[float, Within(0.1, 10)] = 1.0
     tail: OwnTail | None = None
     new_condenser: OwnNewCondenser | None = None
     drain: Annotated[str, OneOf(("saturated", "subcooled"))] = "saturated"

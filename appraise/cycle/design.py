@@ -13,7 +13,7 @@ from appraise.cycle.condensers import log_mean_difference, transfer_units
 from appraise.cycle.energy import Energy
 from appraise.cycle.feedwater import BleedLaw
 from appraise.cycle.plant import PlantData, plant_data
-from appraise.cycle.shells import Sizes
+from appraise.cycle.shells import Shells, Sizes
 from appraise.cycle.solve import solve
 from appraise.cycle.stages import Stage, Train, ideal_train, train_of
 from appraise.cycle.task import Conditions, Reference, Solution, Task
@@ -136,6 +136,9 @@ def size_option(
         for i, (stage, known) in enumerate(zip(train.stages, rated, strict=True))
     )
     shells = solution.shells
+    choked = np.flatnonzero(shells.passing[:, 0] <= 0.0)
+    if choked.size:
+        raise CaseError([Problem(f"options.{train.key}", _no_drop(train, shells, int(choked[0])))])
     through = np.cumsum(shells.steam_kg_s[:, 0])[:-1]
     constant = tuple(float(v) for v in through / shells.passing[:, 0])
     sizes = Sizes(conductance, constant, tuple(map(float, through)), float(solution.network_kg_s[0]))
@@ -188,6 +191,15 @@ def _conductance(stage: Stage, solution: Solution, i: int) -> float:
     units = transfer_units(shells.saturation_C[i], inlet, shells.water_C[i + 1])
     c = (shells.water_kJ_kg[i + 1] - shells.water_kJ_kg[i]) / (shells.water_C[i + 1] - shells.water_C[i])
     return float(units[0] * solution.network_kg_s[0] * c[0])
+
+
+def _no_drop(train: Train, shells: Shells, i: int) -> str:
+    """A tail section that has no pressure left to expand."""
+    inlet = shells.flange_bar[i + 1, 0] * (1.0 - train.tail.inlet_loss_share)
+    return (
+        f"cannot be built: the tail section into stage {i + 1} has {inlet:.4f} bar before it, behind its "
+        f"inlet loss, and {shells.flange_bar[i, 0]:.4f} bar after it"
+    )
 
 
 def _why_not(solution: Solution) -> str:

@@ -1,0 +1,1 @@
+"""Inputs bent at random, and what the program makes of them."""
