@@ -133,4 +133,10 @@ def ideal_train(case: Case, option: Option, stages: int = 16) -> Train:
     rows = tuple(
         replace(pattern, drain_approach_K=None if index == 0 else approach) for index in range(stages)
     )
-    return replace(train, key=f"{option.key} ideal", stages=rows)
+    # Sixteen inlet losses would be a yardstick of valves, not of steps.
+    return replace(
+        train,
+        key=f"{option.key} ideal",
+        stages=rows,
+        tail=replace(train.tail, inlet_loss_share=0.0),
+    )
