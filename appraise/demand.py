@@ -9,9 +9,8 @@ from numpy.typing import NDArray
 
 from appraise.case.hours import Hours
 from appraise.case.load import Case
+from appraise.cycle.task import Mask
 from appraise.numerics import Array
-
-Mask = NDArray[np.bool_]
 
 
 @dataclass(frozen=True, slots=True, eq=False)
