@@ -5,16 +5,21 @@ import secrets
 import shutil
 from collections.abc import Mapping
 from contextlib import suppress
+from itertools import count
 from pathlib import Path
 
 from appraise.errors import FileProblem
+
+_HELD = (5, 32, 33)  # of Windows: access denied, sharing violation, lock violation
+_NAMED_BY = {".xlsx": "--out", ".json": "--json"}
 
 
 def check_target(path: Path) -> None:
     """Refuse, before any work is done, a target that can never be written.
 
-    Raises FileProblem for a folder, for a device or pipe (replacing one would destroy it) and for a target
-    below something that is not a folder. A missing folder is no fault: it is made when writing.
+    Raises FileProblem for a folder, for a device or pipe (replacing one would destroy it), for a file that
+    another program holds open and for a target below something that is not a folder. A missing folder is no
+    fault: it is made when writing.
     """
     if path.is_dir():
         raise FileProblem(f"{path}: cannot be written, it is a folder")
@@ -22,6 +27,7 @@ def check_target(path: Path) -> None:
         raise FileProblem(f"{path}: cannot be written, it is not a regular file")
     if path.exists() and not (path.stat().st_mode & 0o222 and os.access(path, os.W_OK)):
         raise FileProblem(f"{path}: cannot be written, it is read-only")
+    _refuse_held(path)
     above = next(parent for parent in path.absolute().parents if parent.exists())
     if not above.is_dir():
         raise FileProblem(f"{path}: cannot be written, {above} is not a folder")
@@ -30,7 +36,7 @@ def check_target(path: Path) -> None:
 
 
 def write_whole(contents: Mapping[Path, bytes]) -> None:
-    """Write several files, each complete, or none.
+    """Write several files, each complete, or none; what fails leaves no folder that it made.
 
     Every content goes to a temporary file beside its target first; only when all of them are on the disk do
     they take their names. Where that fails or is interrupted half-way, those that had taken theirs give them
@@ -39,19 +45,31 @@ def write_whole(contents: Mapping[Path, bytes]) -> None:
     """
     for path in contents:
         check_target(path)
+    made: list[Path] = []
+    try:
+        _write_all(contents, made)
+    except BaseException:
+        for folder in reversed(made):
+            with suppress(OSError):  # somebody else put something into it
+                folder.rmdir()
+        raise
+
+
+def _write_all(contents: Mapping[Path, bytes], made: list[Path]) -> None:
+    """Write the files; the folders made on the way go into `made`, the outer ones first."""
     waiting: dict[Path, Path] = {}
     kept: dict[Path, Path] = {}
     begun: list[Path] = []
     try:
         for path, data in contents.items():
             target = path.resolve()
+            _make_folder(target.parent, made)
             waiting[path] = _beside(target, "tmp")
             _write_through(waiting[path], target, data)
         for path in contents:
             _keep(path.resolve(), kept)
         for path, temporary in waiting.items():
-            begun.append(path.resolve())
-            os.replace(temporary, begun[-1])
+            _take_name(temporary, path, begun)
     except BaseException as error:
         _restore(begun, kept)
         if isinstance(error, OSError):
@@ -61,6 +79,49 @@ def write_whole(contents: Mapping[Path, bytes]) -> None:
         for temporary in (*waiting.values(), *kept.values()):
             with suppress(OSError):
                 temporary.unlink(missing_ok=True)
+
+
+def _make_folder(folder: Path, made: list[Path]) -> None:
+    for one in reversed([one for one in (folder, *folder.parents) if not one.exists()]):
+        with suppress(FileExistsError):
+            one.mkdir()
+            made.append(one)
+
+
+def _take_name(temporary: Path, path: Path, begun: list[Path]) -> None:
+    """Put the new file in the place of the target. A fault leaves the old one, an interruption either."""
+    begun.append(path.resolve())
+    try:
+        os.replace(temporary, begun[-1])
+    except OSError as error:
+        begun.pop()
+        if _is_held(error) and path.exists():
+            raise _held(path) from error
+        raise
+
+
+def _refuse_held(path: Path) -> None:
+    """On Windows a file that a program holds open cannot be renamed, not even to the name that it has."""
+    if path.exists():
+        target = path.resolve()
+        try:
+            os.rename(target, target)
+        except OSError as error:
+            if _is_held(error):
+                raise _held(path) from error
+
+
+def _is_held(error: OSError) -> bool:
+    return isinstance(error, PermissionError) and getattr(error, "winerror", None) in _HELD
+
+
+def _held(path: Path) -> FileProblem:
+    """What to do about a file that cannot be replaced, with a name that is still free."""
+    numbered = (path.with_stem(f"{path.stem}-{number}") for number in count(2))
+    free = next(other for other in numbered if not os.path.lexists(other))
+    option = _NAMED_BY.get(path.suffix.lower(), "another name:")
+    told = "seems to be open in another program; the old file is unchanged"
+    return FileProblem(f"{path}: cannot be written, it {told}. Close it, or write with {option} {free}")
 
 
 def _beside(target: Path, ending: str) -> Path:
@@ -92,7 +153,6 @@ def _restore(begun: list[Path], kept: dict[Path, Path]) -> None:
 
 
 def _write_through(temporary: Path, target: Path, data: bytes) -> None:
-    temporary.parent.mkdir(parents=True, exist_ok=True)
     with temporary.open("xb") as file:
         file.write(data)
         file.flush()

@@ -167,6 +167,17 @@ _TURTON_DRIVE = Published(
     per_size_unit=1000.0,
     caution=_DRIVE,
 )
+_TURTON_EXPANDER = Published(
+    "axial gas turbine or expander",
+    "tail_shaft_MW",
+    "kW",
+    100.0,
+    4000.0,
+    partial(log_parabola, k1=2.7051, k2=1.4398, k3=-0.1776),
+    _TURTON,
+    per_size_unit=1000.0,
+    caution="made for gas, without generator; 1.2 times the steam turbine drive of the same source",
+)
 
 PUBLISHED: Mapping[str, Published] = MappingProxyType(
     {
@@ -187,11 +198,20 @@ PUBLISHED: Mapping[str, Published] = MappingProxyType(
         "turton-2001-steam-turbine-drive-installed": replace(
             _TURTON_DRIVE, bare_module=(3.54, 0.0), installed=True
         ),
+        "turton-2001-axial-expander": _TURTON_EXPANDER,
+        "turton-2001-axial-expander-installed": replace(
+            _TURTON_EXPANDER, bare_module=(3.5, 0.0), installed=True
+        ),
         "towler-2010-shell-and-tube-u-tube": _towler(
             "shell-and-tube exchanger, U-tube", "area_m2", "m²", (10.0, 1000.0), (28_000.0, 54.0, 1.2)
         ),
         "towler-2010-shell-and-tube-floating-head": _towler(
             "shell-and-tube exchanger, floating head", "area_m2", "m²", (10.0, 1000.0), (32_000.0, 70.0, 1.2)
+        ),
+        # Without materials: what the plates of the source are made of was not read.
+        "towler-2010-plate-and-frame": replace(
+            _towler("plate-and-frame exchanger", "drain_area_m2", "m²", (1.0, 500.0), (1_600.0, 210.0, 0.95)),
+            materials={},
         ),
         "towler-2010-condensing-steam-turbine": _towler(
             "condensing steam turbine",
@@ -205,6 +225,7 @@ PUBLISHED: Mapping[str, Published] = MappingProxyType(
         "towler-2010-pump-motor": _towler(
             "explosion-proof motor", "condensate_pump_kW", "kW", (1.0, 2500.0), (-1_100.0, 2_100.0, 0.6)
         ),
+        "corripio-1982-shell-and-tube-floating-head": _corripio_exchanger("floating head", 0.0, 0.0),
         "corripio-1982-shell-and-tube-u-tube": _corripio_exchanger("U-tube", -0.7844, 0.0830),
         "corripio-1982-shell-and-tube-fixed-tube": _corripio_exchanger("fixed tube", -0.9003, 0.0906),
         "seider-2013-non-condensing-steam-turbine": _seider_turbine("non-condensing", 10_660.0, 0.41),

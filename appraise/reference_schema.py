@@ -12,6 +12,7 @@ from typing import Any
 
 from appraise.case.fields import Curve, PricePath, Table
 from appraise.case.kinds import (
+    CalendarDay,
     Change,
     DayOfYear,
     Kind,
@@ -136,6 +137,8 @@ def schema_of_kind(kind: Kind) -> Schema:
             return {"type": "string", **_given({"pattern": _searched(kind.pattern)})}
         case DayOfYear():
             return {"type": "string", "pattern": _DAY}
+        case CalendarDay():
+            return {"type": "string", "pattern": f"^[0-9]{{4}}-{_DAY[1:]}"}
         case Change():
             return {"anyOf": [schema_of_kind(Within()), {"type": "string", "pattern": _PERCENT}]}
         case TextOrTexts():

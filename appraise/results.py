@@ -47,6 +47,7 @@ def _about(study: Study) -> dict[str, Any]:
     loaded, about = study.loaded, study.case.study
     return {
         "title": about.title,
+        "date": study.dated.isoformat(),
         "currency": about.currency,
         "price_year": about.price_year,
         "first_year": about.first_year,

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from datetime import date
 
 import numpy as np
 
@@ -54,6 +55,7 @@ class Study:
     """All results of a case. Tuples follow the case's order of options and of scenarios."""
 
     loaded: LoadedCase
+    dated: date  # what the case says, else the day of the run
     physics: Physics
     balances: tuple[Balance, ...]
     capital: tuple[OptionCapital, ...]
@@ -111,13 +113,16 @@ def run_study(
     progress: Progress = lambda fraction, label: None,
     draws: int | None = None,
     verify: int = FEWEST_CHECKED,
+    today: date | None = None,
 ) -> Study:
     """Solve everything the case asks for.
 
     progress : hears a fraction from 0 to 1 and what is being done. draws : in place of the case's number.
     verify : how many draws are solved in full to measure the error of the method.
+    today : the study's date where the case has none; left out, the day by this computer's clock.
     """
     case, hours = loaded.case, loaded.hours
+    dated = _date_of(case, today)
     progress(0.0, "design point and year")
     physics = solve_physics(case, hours)
     bought = capital(case, physics.sizes)
@@ -152,6 +157,7 @@ def run_study(
     progress(0.95, "checks")
     return Study(
         loaded=loaded,
+        dated=dated,
         physics=physics,
         balances=design_balances(case, physics.design),
         capital=bought,
@@ -171,6 +177,11 @@ def run_study(
         design_choice=choice,
         checks=checks(case, hours, physics, bought, runs, None if drawn is None else drawn.method_error),
     )
+
+
+def _date_of(case: Case, today: date | None) -> date:
+    given = case.study.date
+    return date.fromisoformat(given) if given is not None else today or date.today()
 
 
 def design_of(loaded: LoadedCase, key: str | None) -> DesignChoice | None:

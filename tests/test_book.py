@@ -7,6 +7,7 @@ import re
 import shutil
 import time
 from collections.abc import Callable
+from datetime import datetime
 from pathlib import Path
 from typing import Any
 from zipfile import ZipFile
@@ -28,6 +29,7 @@ from books import (
 from cases import csv_text, minimal_case, synthetic_hours, write_case
 from full_case import full_case
 from libreoffice import needs_libreoffice, recalculate
+from study_fixture import TODAY
 
 from appraise import cli
 from appraise.case.book import BookCase
@@ -117,7 +119,7 @@ def test_the_demos_workbook_is_the_demo(marrowby: LoadedCase, marrowby_study: St
     assert time.process_time() - started < 1.5
     assert same(again, marrowby)
     assert (again.path, again.hours_path) == (path, path)
-    study = run_study(again)
+    study = run_study(again, today=marrowby_study.dated)
     assert without_identity(study) == without_identity(marrowby_study)
     second = tmp_path / "second.xlsx"
     second.write_bytes(workbook_bytes(study))
@@ -246,7 +248,67 @@ def test_an_edited_workbook_is_the_edited_file(
     file = load_case(write_case(tmp_path / "toml", edited(minimal_case(), path, value)))
     assert same(again, file)
     assert again.case != small.case
-    assert without_identity(run_study(again)) == without_identity(run_study(file))
+    assert without_identity(run_study(again, today=TODAY)) == without_identity(run_study(file, today=TODAY))
+
+
+def dated_book(folder: Path, given: str | None, number_format: str = "", value: object = None) -> Path:
+    """A workbook of a case with this date, its cell typed over where a format is given."""
+    data = minimal_case() if given is None else edited(minimal_case(), "study.date", given)
+    path = small_book(folder, data)
+    if number_format:
+        book = openpyxl.load_workbook(path)
+        cell = book["Inputs"][addresses(load_case(path).case, path.read_bytes())["study.date"]]
+        cell.number_format, cell.value = number_format, value
+        book.save(path)
+    return path
+
+
+def test_a_date_comes_back_and_so_does_none(tmp_path: Path) -> None:
+    (tmp_path / "none").mkdir()
+    assert load_case(dated_book(tmp_path, "2026-12-01")).case.study.date == "2026-12-01"
+    assert load_case(dated_book(tmp_path / "none", None)).case.study.date is None
+
+
+def test_a_cell_of_a_date_keeps_what_is_typed_as_a_text(tmp_path: Path) -> None:
+    for given in ("2026-12-01", None):
+        folder = tmp_path / str(given)
+        folder.mkdir()
+        path = dated_book(folder, given)
+        cell = addresses(load_case(path).case, path.read_bytes())["study.date"]
+        assert openpyxl.load_workbook(path)["Inputs"][cell].number_format == "@"
+
+
+@pytest.mark.parametrize(
+    ("number_format", "value", "found"),
+    [
+        ("yyyy-mm-dd", 46357, "2026-12-01"),  # a date made by the spreadsheet
+        ("d.m.yyyy", datetime(2026, 12, 1), "2026-12-01"),
+        ("@", "2026-12-24", "2026-12-24"),
+        ("@", None, None),
+    ],
+)
+def test_a_date_may_be_typed_as_a_text_or_a_date(
+    tmp_path: Path, number_format: str, value: object, found: str | None
+) -> None:
+    assert load_case(dated_book(tmp_path, "2020-01-01", number_format, value)).case.study.date == found
+
+
+@pytest.mark.parametrize(
+    ("number_format", "value", "given"),
+    [
+        ("yyyy-mm-dd hh:mm", 46357.5, "2026-12-01T12:00:00"),
+        ("General", 46357, "46357"),
+        ("@", "1.12.2026", '"1.12.2026"'),
+        ("@", "2026-02-30", '"2026-02-30"'),
+    ],
+)
+def test_what_is_no_date_is_told_by_its_cell(
+    tmp_path: Path, at: dict[str, str], number_format: str, value: object, given: str
+) -> None:
+    cell = at["study.date"]
+    allowed = 'allowed: a date as "YYYY-MM-DD", such as "2026-12-01"'
+    told = faults(dated_book(tmp_path, None, number_format, value))
+    assert told == [f"Inputs!{cell} (study.date): {given} given; {allowed}"]
 
 
 @pytest.mark.parametrize("word", ["TRUE", "true", " True "])

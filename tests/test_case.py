@@ -221,6 +221,18 @@ def test_a_missing_key_says_what_is_required(path: str, fault: str):
             "year.outages[1].from",
             '"02-30" given; allowed: a day of the year as "MM-DD", such as "07-01"',
         ),
+        (
+            "study.date",
+            "2026-02-29",
+            None,
+            '"2026-02-29" given; allowed: a date as "YYYY-MM-DD", such as "2026-12-01"',
+        ),
+        (
+            "study.date",
+            20261201,
+            None,
+            '20261201 given; allowed: a date as "YYYY-MM-DD", such as "2026-12-01"',
+        ),
         ("study.reference_scenario", "centrall", None, '"centrall" given; nearest known scenario: central'),
         ("scenarios.central.fuel", float("inf"), None, "inf given; allowed: a finite number"),
         (

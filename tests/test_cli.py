@@ -286,7 +286,7 @@ def test_a_table_lines_up() -> None:
 
 def short_case(folder: Path) -> Path:
     """The small case without drivers, which runs in a few seconds."""
-    return write_case(folder, edited(minimal_case(), "drivers", []))
+    return write_case(folder, edited(edited(minimal_case(), "drivers", []), "study.date", "2026-12-01"))
 
 
 @pytest.fixture(scope="module")

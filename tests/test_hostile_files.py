@@ -252,6 +252,131 @@ def test_a_disk_without_links_keeps_copies(tmp_path: Path, monkeypatch: pytest.M
         assert contents(tmp_path) == {"a": b"old a", "b": b"old b"}
 
 
+def held(number: int) -> PermissionError:
+    """What Windows says of a file that another program holds open."""
+    error = PermissionError(errno.EACCES, "The process cannot access the file")
+    error.winerror = number  # type: ignore[attr-defined]
+    return error
+
+
+def held_told(name: str, option: str, free: str) -> Answer:
+    what = "cannot be written, it seems to be open in another program; the old file is unchanged"
+    return Answer(2, "", f"Error: {name}: {what}. Close it, or write with {option} {free}\n")
+
+
+@pytest.mark.parametrize("links", [True, False])
+@pytest.mark.parametrize("number", [5, 32])
+@pytest.mark.parametrize(
+    ("at", "told"),
+    [
+        (1, held_told("out.xlsx", "--out", "out-2.xlsx")),
+        (2, held_told("out.json", "--json", "out-2.json")),
+    ],
+)
+def test_a_report_that_is_opened_during_the_run_stays_and_so_does_the_other(
+    call: Call,
+    tmp_path: Path,
+    reports: dict[str, bytes],
+    monkeypatch: pytest.MonkeyPatch,
+    at: int,
+    told: Answer,
+    number: int,
+    links: bool,
+) -> None:
+    """The open file cannot be replaced again when the others are put back; nothing stays beside the old."""
+    replace, calls = os.replace, []
+
+    def replaced(source: Path, target: Path) -> None:
+        calls.append(target.name)
+        if target.name == ("out.xlsx", "out.json")[at - 1]:
+            raise held(number)
+        replace(source, target)
+
+    monkeypatch.setattr(files.os, "replace", replaced)
+    if not links:
+        monkeypatch.setattr(files.os, "link", failing(OSError(errno.EPERM, "no links"), os.link, 1))
+    assert call(*REPORT) == told
+    assert len(calls) == (1 if at == 1 else 3)  # the second fault also puts the first report back
+    assert contents(tmp_path) == reports
+
+
+@pytest.mark.parametrize(
+    ("name", "option", "free", "taken"),
+    [
+        ("out.xlsx", "--out", "out-2.xlsx", ()),
+        ("out.xlsx", "--out", "out-4.xlsx", ("out-2.xlsx", "out-3.xlsx")),
+        ("out.json", "--json", "out-2.json", ("out-3.json",)),
+    ],
+)
+def test_a_report_that_is_open_is_told_before_the_run(
+    call: Call,
+    tmp_path: Path,
+    reports: dict[str, bytes],
+    monkeypatch: pytest.MonkeyPatch,
+    name: str,
+    option: str,
+    free: str,
+    taken: tuple[str, ...],
+) -> None:
+    def renamed(source: Path, target: Path) -> None:
+        assert source == target
+        if source.name == name:
+            raise held(32)
+
+    for other in taken:
+        (tmp_path / other).write_bytes(b"taken")
+    monkeypatch.setattr(files.os, "rename", renamed)
+    monkeypatch.setattr("appraise.study.run_study", failing(AssertionError("solved"), print, 1))
+    assert call(*REPORT) == held_told(name, option, free)
+    assert contents(tmp_path) == reports | dict.fromkeys(taken, b"taken")
+
+
+def test_a_folder_that_refuses_is_not_taken_for_an_open_file(
+    call: Call, tmp_path: Path, reports: dict[str, bytes], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Access denied where there is no old file, or by a disk that does not say what Windows says."""
+    monkeypatch.setattr(files.os, "replace", failing(held(5), os.replace, 1))
+    (tmp_path / "out.xlsx").unlink()
+    answer = call(*REPORT)
+    assert answer.err == "Error: out.xlsx: cannot be written, The process cannot access the file\n"
+    monkeypatch.setattr(files.os, "replace", failing(PermissionError(errno.EACCES, "no"), os.replace, 2))
+    assert call(*REPORT).err == "Error: out.json: cannot be written, no\n"
+    assert contents(tmp_path) == {name: data for name, data in reports.items() if name != "out.xlsx"}
+
+
+def folders(folder: Path) -> set[str]:
+    return {str(path.relative_to(folder)) for path in folder.rglob("*") if path.is_dir()}
+
+
+@pytest.mark.parametrize("error", [FULL, KeyboardInterrupt()])
+@pytest.mark.parametrize("name", ["fsync", "replace"])
+def test_folders_that_were_made_for_nothing_go_again(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, name: str, error: BaseException
+) -> None:
+    (tmp_path / "there").mkdir()
+    monkeypatch.setattr(files.os, name, failing(error, getattr(os, name), 2))
+    new = {tmp_path / "there" / "a" / "b" / "1": b"new", tmp_path / "there" / "a" / "c" / "2": b"new"}
+    with pytest.raises((files.FileProblem, KeyboardInterrupt)):
+        files.write_whole(new)
+    assert folders(tmp_path) == {"there"}
+    monkeypatch.undo()
+    files.write_whole(new)
+    assert folders(tmp_path) == {"there", "there/a", "there/a/b", "there/a/c"}
+
+
+def test_a_folder_that_somebody_else_uses_by_now_stays(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def replaced(source: Path, target: Path) -> None:
+        (target.parent / "theirs").write_bytes(b"theirs")
+        raise FULL
+
+    monkeypatch.setattr(files.os, "replace", replaced)
+    with pytest.raises(files.FileProblem):
+        files.write_whole({tmp_path / "a" / "b" / "mine": b"new"})
+    assert contents(tmp_path) == {os.path.join("a", "b", "theirs"): b"theirs"}
+
+
 @pytest.mark.parametrize("name", ["out.xlsx", "out.json"])
 def test_a_read_only_report_is_left_alone(
     call: Call, tmp_path: Path, reports: dict[str, bytes], name: str

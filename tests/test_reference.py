@@ -248,6 +248,7 @@ def test_the_schema_refuses_nothing_that_the_reader_accepts(value: object):
         ("study.years", 20, 20.5),
         ("study.currency", "EUR", "EURO"),
         ("study.title", "ä\nb", " \n"),
+        ("study.date", "2028-02-29", "2026-02-30"),
         ("year.outages", [{"from": "02-29", "to": "03-31"}], [{"from": "02-30", "to": "03-31"}]),
         ("year.extra_running", True, 1),
         ("scenarios.central.power", {"start": 60.0, "change_per_year": 0.01}, {"change_per_year": 0.01}),

@@ -16,13 +16,14 @@ from libreoffice import differences, needs_libreoffice, recalculate
 from study_fixture import marrowby_study
 
 from appraise.case.load import load_case
+from appraise.checks import Check
 from appraise.numerics import Array
 from appraise.steam_fits import enthalpy_ps, saturation
 from appraise.study import Study, run_study
 from appraise.workbook.addresses import cells_in, corners
 from appraise.workbook.cautions import cautions_sheet
 from appraise.workbook.cells import LABEL, TOTAL, UNIT, YEAR_ZERO, Cell, Sheet
-from appraise.workbook.checks import checks_sheet
+from appraise.workbook.checks import checks_sheet, title_of
 from appraise.workbook.diagram_data import (
     Window,
     dome,
@@ -503,7 +504,7 @@ def test_hours_are_those_that_were_read() -> None:
 
 def test_hours_print_no_ream() -> None:
     for sheet in (demo("Hours"), hours_sheet(three_stage_study())):
-        assert corners(sheet.printing.area)[2] < FIRST_ROW
+        assert corners(sheet.printing.area)[2] == FIRST_ROW + 23  # the first day as a sample
 
 
 def test_longer_series_are_named_only() -> None:
@@ -511,6 +512,8 @@ def test_longer_series_are_named_only() -> None:
     hours = replace(study.hours, number_of_years=2)
     sheet = hours_sheet(replace(study, loaded=replace(study.loaded, hours=hours)))
     assert max(row for row, _ in sheet.cells) < FIRST_ROW
+    assert corners(sheet.printing.area)[2] < FIRST_ROW
+    assert "sample" not in text_of(sheet)
     assert study.loaded.hours_sha256 in text_of(sheet)
     assert hours.heat_MW is not None
     assert sheet.cells[STATISTICS_ROW, 2].value == pytest.approx(hours.heat_MW.mean(), rel=1e-12)
@@ -527,7 +530,7 @@ def test_hours_without_prices_have_no_column_of_them() -> None:
 def test_every_check_is_listed() -> None:
     sheet, study = demo("Checks"), marrowby_study()
     for check in study.checks:
-        (row,) = rows_labelled(sheet, check.name)
+        (row,) = rows_labelled(sheet, title_of(study.case, check))
         assert sheet.cells[row, 2].value == ("OK" if check.passed else "LOOK")
         for col, value in ((3, check.value), (4, check.limit)):
             shown = sheet.cells[row, col].value
@@ -535,6 +538,23 @@ def test_every_check_is_listed() -> None:
         assert str(sheet.cells[row, 6].value).lower() == check.message.lower()
     assert named(sheet, "checks_total") == [len(study.checks)]
     assert named(sheet, "checks_passed") == [sum(check.passed for check in study.checks)]
+
+
+def test_checks_name_options_and_items_as_people_do_and_hours_by_the_clock() -> None:
+    study = marrowby_study()
+    about = {check.name: title_of(study.case, check) for check in study.checks}
+    assert about["moisture, two-stage"] == "Moisture, “Two stages”"
+    assert about["drain into stage 1, two-stage-subcooled"] == (
+        "Drain into stage 1, “Two stages, drain cooler”"
+    )
+    bought = Check("capital, two-stage, condenser", False, None, None, "x", "two-stage", "condenser")
+    assert title_of(study.case, bought) == "Capital, “Two stages”, “New condenser with vacuum unit”"
+    keys = [option.key for option in study.case.options if "-" in option.key]
+    text = text_of(demo("Checks"))
+    assert keys
+    assert not [key for key in keys if re.search(rf"(?<![\w-]){key}(?![\w-])", text)]
+    said = [check.message for check in study.checks if check.name.startswith("moisture")]
+    assert all(re.search(r", at (2025-\d\d-\d\d \d\d:00|the design point); ", one) for one in said)
 
 
 def test_checks_count_a_failure() -> None:

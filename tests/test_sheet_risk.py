@@ -268,7 +268,7 @@ def test_what_the_draws_mean_is_said_in_words() -> None:
         risk.options[1], chance_npv_positive=0.874, chance_best=0.6, p5=-123_400.0, p95=2_345_600.0
     )
     assert option_words("Two stages", option, False, "EUR") == (
-        "Two stages is worth more than the baseline in 87 % of the draws and best of all in 60 %; "
+        "“Two stages” is worth more than the baseline in 87 % of the draws and best of all in 60 %; "
         "nine draws in ten lie between -123 and 2,346 thousand EUR."
     )
     assert "in those no option pays" in option_words("As it is", option, True, "EUR")

@@ -71,9 +71,9 @@ def test_the_sentences_say_the_same_in_words_and_as_formulas(tmp_path: Path) -> 
     path.write_bytes(book_bytes([page.finish()], title="t", author="a", subject="s", footer="f"))
     found = recalculate(path, tmp_path)["Words"]
     assert [(cell, found[cell]) for cell, _ in expected] == expected
-    assert expected[0][1] == 'Two "new" stages is best in every scenario.'
-    assert expected[2][1] == "No option beats the plant as it stands (As it is) in any scenario."
-    assert expected[4][1].startswith("No option is best in every scenario; Larger is best in 2 of 3")
+    assert expected[0][1] == '“Two "new" stages” is best in every scenario.'
+    assert expected[2][1] == "No option beats the plant as it stands (“As it is”) in any scenario."
+    assert expected[4][1].startswith("No option is best in every scenario; “Larger” is best in 2 of 3")
 
 
 def test_the_chart_shows_every_option_but_the_baseline() -> None:

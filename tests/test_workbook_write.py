@@ -172,7 +172,7 @@ def test_view_and_print() -> None:
     assert (page.oddHeader.left.text, page.oddHeader.right.text) == ("Study of Marrowby", "Prices")
     assert page.oddFooter.left.text == "revision B && C"
     assert page.oddFooter.center.text is None  # beside it, the left part may be long
-    assert page.oddFooter.right.text == "printed &D · page &P of &N"
+    assert page.oddFooter.right.text == "page &P of &N"
     assert page.HeaderFooter.scaleWithDoc is False
 
 

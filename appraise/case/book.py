@@ -122,7 +122,7 @@ def _as_fault(place: Place) -> str:
 def _hint(one: Input, message: str) -> str:
     """What a spreadsheet made of what was typed, where that explains the fault."""
     allowed = message.partition("allowed: ")[2]
-    if isinstance(one.value, date):
+    if isinstance(one.value, date) and "YYYY" not in allowed:
         return "; the spreadsheet made a date of what was typed, an apostrophe before it keeps it: '07-06"
     if isinstance(one.value, Odd) and "percentage" in one.value.words:
         return "; an apostrophe before what is typed keeps it: '-20%"

@@ -6,8 +6,9 @@ Every kind says in plain words what it allows; a fault reads "what was given; al
 import math
 import re
 from collections.abc import Iterable
+from contextlib import suppress
 from dataclasses import dataclass
-from datetime import date
+from datetime import date, datetime, time
 from itertools import pairwise
 from typing import Annotated, Any
 
@@ -251,6 +252,25 @@ class DayOfYear(Kind):
 
 
 @dataclass(frozen=True, slots=True)
+class CalendarDay(Kind):
+    """A date as "YYYY-MM-DD", or as what a date is in a file; read as the text."""
+
+    @property
+    def allowed(self) -> str:
+        """The form of a date."""
+        return 'a date as "YYYY-MM-DD", such as "2026-12-01"'
+
+    def __call__(self, value: Any) -> str:
+        if isinstance(value, datetime) and value.timetz() == time():
+            value = value.date()  # some programs store a day as its midnight
+        text = value.isoformat() if type(value) is date else value
+        if isinstance(text, str) and re.fullmatch(r"\d{4}-\d\d-\d\d", text, re.ASCII):
+            with suppress(ValueError):
+                return date.fromisoformat(text).isoformat()
+        raise fault(said(value, self.allowed))
+
+
+@dataclass(frozen=True, slots=True)
 class Change(Kind):
     """A number that replaces a value, or a text like "-20%" that multiplies it (by 0.8)."""
 
@@ -305,4 +325,5 @@ Numbers = Annotated[tuple[float, ...], ListOf(Within(), "numbers")]
 PositiveNumbers = Annotated[tuple[float, ...], ListOf(_POSITIVE, "numbers above 0")]
 WholeShares = Annotated[tuple[float, ...], ListOf(Within(0, 1), "shares from 0 to 1", whole=True)]
 Day = Annotated[str, DayOfYear()]
+MaybeDate = Annotated[str | None, CalendarDay()]
 MaybeChange = Annotated[float | str | None, Change()]

@@ -19,6 +19,7 @@ from appraise.case.kinds import (
     Key,
     ListOf,
     LossShare,
+    MaybeDate,
     MaybeEfficiency,
     MaybePositive,
     MaybeShare,
@@ -44,6 +45,7 @@ class Study(Table):
     title: Text
     author: AnyText = ""
     revision: AnyText = ""
+    date: MaybeDate = None
     currency: CurrencyCode
     price_year: CalendarYear
     first_year: CalendarYear  # of operation

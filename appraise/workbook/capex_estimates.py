@@ -29,5 +29,5 @@ def put_estimates(page: Page, row: int, study: Study) -> int:
             page.put(row, YEAR_ZERO, one.amount, "money as run")
             page.put(row, YEAR_ZERO + 1, one.ratio, "number2 as run")
         said = "; ".join(part for part in (one.name, one.reason or one.source, *one.doubts) if part)
-        page.paragraph(row, YEAR_ZERO + 2, LAST, said, "note_wrap", least_lines=2)
+        page.paragraph(row, YEAR_ZERO + 2, LAST, said, "note_wrap_indent", least_lines=2)
     return row + 2

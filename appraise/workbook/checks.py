@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from math import ceil
 
+from appraise.case.load import Case
 from appraise.checks import Check
 from appraise.study import Study
 from appraise.workbook.cells import Page, Sheet, area
@@ -11,7 +12,7 @@ from appraise.workbook.side_by_side import LINE_POINTS, residual
 
 TITLE = "Checks"
 OK, LOOK = "OK", "LOOK"
-WIDTHS = (44.0, 10.0, 12.0, 12.0, 2.0, 92.0)
+WIDTHS = (54.0, 10.0, 11.0, 11.0, 2.0, 96.0)
 _HEADS = ("Check", "Result", "Value", "Limit", "", "What it says")
 FIRST_ROW = 9
 
@@ -42,7 +43,7 @@ def checks_sheet(study: Study) -> Sheet:
     )
     page.headings(FIRST_ROW - 1, _HEADS)
     for row, check in enumerate(ordered, FIRST_ROW):
-        _check_row(page, row, check)
+        _check_row(page, row, check, title_of(study.case, check))
     for cells in (results.replace("$", ""), "B6"):
         first = cells.split(":")[0]
         page.highlight(cells, f'={first}="{OK}"', "ok")
@@ -52,9 +53,21 @@ def checks_sheet(study: Study) -> Sheet:
     return page.finish()
 
 
-def _check_row(page: Page, row: int, check: Check) -> None:
-    one_line = _lines(check.name, WIDTHS[0]) == _lines(check.message, WIDTHS[5]) == 1
-    page.put(row, 1, check.name, "label" if one_line else "label_wrap")
+def title_of(case: Case, check: Check) -> str:
+    """What is checked, with option and capital item by their names."""
+    what, names = check.name, []
+    if check.item is not None:
+        what = what.removesuffix(f", {check.item}")
+        names.append(next(item.name for item in case.capex.items if item.key == check.item))
+    if check.option is not None:
+        what = what.removesuffix(f", {check.option}")
+        names.insert(0, next(option.name for option in case.options if option.key == check.option))
+    return ", ".join([_sentence(what), *(f"“{name}”" for name in names)])
+
+
+def _check_row(page: Page, row: int, check: Check, title: str) -> None:
+    one_line = _lines(title, WIDTHS[0]) == _lines(check.message, WIDTHS[5]) == 1
+    page.put(row, 1, title, "label" if one_line else "label_wrap")
     page.put(row, 2, OK if check.passed else LOOK, "text_centre")
     for col, value in ((3, check.value), (4, check.limit)):
         if value is None:
@@ -63,7 +76,7 @@ def _check_row(page: Page, row: int, check: Check) -> None:
             kind = kind_of(value)
             page.put(row, col, residual(value) if kind == "tiny" else value, f"{kind} as run")
     page.put(row, 6, _sentence(check.message), "text" if one_line else "text_wrap")
-    lines = max(_lines(check.name, WIDTHS[0]), _lines(check.message, WIDTHS[5]))
+    lines = max(_lines(title, WIDTHS[0]), _lines(check.message, WIDTHS[5]))
     page.height(row, lines * LINE_POINTS + 3.0)
 
 
@@ -83,5 +96,5 @@ def _lines(text: str, width: float) -> int:
 
 def _sentence(text: str) -> str:
     """The text with a capital, unless it begins with a unit."""
-    first = text.split(" ", 1)[0].rstrip(",;")
+    first = text.split(" ", 1)[0].rstrip(",;:")
     return text[:1].upper() + text[1:] if first.isalpha() else text

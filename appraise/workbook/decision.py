@@ -15,6 +15,7 @@ from appraise.workbook.decision_words import (
     Cells,
     basis,
     leaning,
+    origin,
     question,
     reason,
     reason_formula,
@@ -63,6 +64,8 @@ class _Decision:
         page = self.page
         page.width([46, 12] + [OPTION_WIDTH] * max(len(self.options), 3) + [LAST_WIDTH])
         page.head(self.case.study.title)
+        page.put(3, LABEL, origin(self.study), "note")
+        page.height(3, 20)
         self._question()
         self._options_table()
         self._break_evens()
@@ -237,7 +240,6 @@ class _Decision:
                 "break_even_carbon_price",
             ),
         ):
-            row = self.row
             self._live(
                 f"even_{kind}",
                 label,
@@ -247,7 +249,7 @@ class _Decision:
                 "–",
             )
             formula = f"=INDEX(chosen__{kind},1,spend_years+1)"
-            self.page.formula(row, self.last + 1, formula, float(planned[0]), "number1")
+            self.page.formula(self.row - 1, self.last + 1, formula, float(planned[0]), "number1")
         self._live(
             "largest_capital", "Capital", money, "money", lambda i: _or(told[i].largest_capex, NOTHING), "–"
         )

@@ -59,7 +59,7 @@ def _values(study: Study, others: list[int], row: int, last_col: int) -> Chart:
         (SCENARIOS, titles),
         x="",
         y=Axis(f"thousand {money}", "#,##0,"),
-        alt=f"Net present value of each option in each scenario, {money}; the plant as it is is 0.",
+        alt=f"Net present value of each option in each scenario, {money}; the plant as it stands at 0.",
         anchor=ref(row, TOTAL + 1),
         size_cm=(pixels / 96.0 * 2.54, CHART_CM),
     )

@@ -113,6 +113,13 @@ def reason_formula(cells: Cells, currency: str) -> str:
     )
 
 
+def origin(study: Study) -> str:
+    """Of which day the study is, which revision, and by whom."""
+    about = study.case.study
+    parts = (f"Study of {study.dated}", f"revision {about.revision}" if about.revision else "", about.author)
+    return " · ".join(part for part in parts if part)
+
+
 def question(baseline: str, options: int, years: int, first_year: int) -> str:
     """What the study was asked."""
     ways = "one way" if options == 1 else f"{options} ways"

@@ -68,7 +68,7 @@ def curve_words(curve: Curve, stated: Stated, currency: str) -> str:
             f"{curve.label}: as stated ({now}) it is on the flat top of the curve, {ends}: nothing to gain."
         )
     words = f"{curve.label}: {best} instead of {now} would add {thousands(gain, currency)}"
-    words += f"; from {ends} it makes no difference." if ends else "."
+    words += f"; from {ends} it makes no difference to speak of." if ends else "."
     built = [value for value, npv in zip(curve.values, curve.npv, strict=True) if npv is not None]
     if len(built) > 2 and curve.best in (built[0], built[-1]):
         words += " That is the last value that was tried or can be built: more may lie beyond."

@@ -32,9 +32,9 @@ def option_words(name: str, risk: OptionRisk, baseline: bool, currency: str) -> 
     """What the draws say about one option."""
     best = per_cent(risk.chance_best)
     if baseline:
-        return f"{name}, worth 0 by definition, is best in {best} of the draws: in those no option pays."
+        return f"“{name}”, worth 0 by definition, is best in {best} of the draws: in those no option pays."
     return (
-        f"{name} is worth more than the baseline in {per_cent(risk.chance_npv_positive)} of the draws and "
+        f"“{name}” is worth more than the baseline in {per_cent(risk.chance_npv_positive)} of the draws and "
         f"best of all in {best}; nine draws in ten lie between {risk.p5 / 1000.0:,.0f} and "
         f"{thousands(risk.p95, currency)}."
     )

@@ -20,6 +20,8 @@ from appraise.workbook.cells import Page, Sheet, area, column
 
 STATISTICS_ROW = 6  # mean, least, greatest
 LAST_COLUMN = 8  # of what is printed
+PRINTED_HOURS = 24
+PRINTED = " Printed is the first day, as a sample; the sheet has them all."
 
 _COLUMNS = ("heat_MW", "outdoor_C", "supply_C", "return_C", "power_price")
 _Statistic = Callable[[Array], float]
@@ -31,7 +33,7 @@ _STATISTICS: tuple[tuple[str, str, _Statistic], ...] = (
 
 
 def hours_sheet(study: Study) -> Sheet:
-    """The hours as read; printed is only what they are."""
+    """The hours as read; printed is what they are, and their first day as a sample."""
     page = Page(TITLE, "as run")
     columns = list(columns_of(study.hours))
     last_column = max(LAST_COLUMN, 1 + len(columns))
@@ -48,7 +50,7 @@ def hours_sheet(study: Study) -> Sheet:
         3,
         1,
         f"{loaded.hours_path.name}: {hours.time.size:,} hours, {years}, from {_shown(hours.time[0])} to "
-        f"{_shown(hours.time[-1])}.",
+        f"{_shown(hours.time[-1])}.{PRINTED if one_year else ''}",
         "note",
     )
     hashed = HASH_OF_ROWS if loaded.hours_path == loaded.path else HASH_OF_FILE
@@ -66,7 +68,8 @@ def hours_sheet(study: Study) -> Sheet:
                 page.put(row, col, value, "number2 as run")
     if one_year:
         _rows(page, hours, columns)
-    page.printed(area=f"A1:{column(last_column)}{FIRST_ROW - 1}")
+    last_row = FIRST_ROW - 1 + (PRINTED_HOURS if one_year else 0)
+    page.printed(area=f"A1:{column(last_column)}{last_row}")
     return page.finish()
 
 

@@ -233,7 +233,7 @@ def section_of(path: str) -> str:
 
 
 _TEXT_ONLY = re.compile(
-    r"study\.(title|author|revision)|options\.[^.]*\.name|capex\.items\.[^.]*\.(name|source)"
+    r"study\.(title|author|revision|date)|options\.[^.]*\.name|capex\.items\.[^.]*\.(name|source)"
     r"|scenarios\..*\.title|plant\.boiler\.fuel"
 )
 _LIVE = re.compile(

@@ -5,6 +5,7 @@ from types import MappingProxyType
 
 BLANKS: Mapping[str, str] = MappingProxyType(
     {
+        "Study.date": "the day of the run",
         "Boiler.max_fuel_MW": "no limit",
         "Turbine.generator_limit_MW": "no limit",
         "Condenser.max_heat_MW": "no limit",

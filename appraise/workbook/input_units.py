@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from appraise.case.kinds import Kind, Like, OneOf, TrueOrFalse
+from appraise.case.kinds import CalendarDay, Kind, Like, OneOf, TrueOrFalse
 from appraise.item_money import unit_of
 
 InputValue = str | bool | int | float | None
@@ -106,7 +106,8 @@ def unit_of_leaf(leaf: Leaf) -> str:
     for suffix, unit in _UNIT_OF_SUFFIX:
         if leaf.key.endswith(suffix):
             return unit
-    words = isinstance(leaf.value, str | bool) or isinstance(leaf.kind, OneOf | TrueOrFalse | Like)
+    kinds = OneOf | TrueOrFalse | Like | CalendarDay
+    words = isinstance(leaf.value, str | bool) or isinstance(leaf.kind, kinds)
     return "" if words else "–"
 
 

@@ -9,6 +9,7 @@ WORDS: Mapping[str, Mapping[str, str]] = MappingProxyType(
             "title": "title",
             "author": "author",
             "revision": "revision",
+            "date": "date of the study",
             "currency": "currency of the study",
             "price_year": "year of the money",
             "first_year": "first year of operation",

@@ -24,7 +24,7 @@ from appraise.case.book_layout import (
     WORDS,
 )
 from appraise.case.book_layout import INPUTS as TITLE
-from appraise.case.kinds import Kind, OneOf, TrueOrFalse, Whole, Within
+from appraise.case.kinds import CalendarDay, Kind, OneOf, TrueOrFalse, Whole, Within
 from appraise.case.load import Case
 from appraise.workbook.cells import Page, Sheet, area, quoted, ref
 from appraise.workbook.input_rows import InputRow, input_rows
@@ -35,7 +35,7 @@ from appraise.workbook.naming import input_name
 if TYPE_CHECKING:
     from appraise.study import Study
 
-WIDTHS = (43.0, 38.0, 33.0, 26.0, 9.0, 9.5, 10.0, 54.0)
+WIDTHS = (40.0, 38.0, 25.0, 21.0, 9.0, 9.5, 10.0, 44.0)
 CHARACTERS, NOTE_CHARACTERS = 1.2, 1.3  # of a text, per character of the width
 
 LARGEST = 1e15  # numbers without a limit of their own, as far as a cell keeps all digits
@@ -44,7 +44,7 @@ LINE_POINTS, LEAST_POINTS = 12.5, 12.75
 HEADING_POINTS, GAP_POINTS = 17.0, 8.0  # of a group's heading, and of the row before it
 IN_STEP = "Heat balances, hours and sizes belong to these inputs."
 OUTDATED = "Heat balances, hours and sizes are still those of the run: run this workbook again."
-PAGE_POINTS = 760.0  # height of what surely fits on a printed page, at the scale that its width asks for
+PAGE_POINTS = 670.0  # height of what surely fits on a printed page, at the scale that its width asks for
 LEAST_ROWS = 5  # of a group that begins at the foot of a page, its heading included
 SAME = "1E-12"  # numbers that differ by less, relative to the larger, are the same
 
@@ -194,7 +194,7 @@ def _one_row(page: Page, case: Case, item: InputRow, row: int) -> None:
     """One input, in a row as tall as its texts need."""
     style = value_style(item)
     page.put(row, PATH, item.path, "note")
-    page.put(row, WORDS, item.words, "label")
+    page.put(row, WORDS, item.words, "label" if _lines(item.words, WORDS) == 1 else "label_wrap")
     page.put(row, VALUE, item.value, f"{style} input", name=input_name(item.path), note=_typing_hint(item))
     page.put(row, AS_RUN, item.value, f"{style} as run")
     page.formula(row, CHANGED, _changed(row), "", "text_centre")
@@ -203,7 +203,7 @@ def _one_row(page: Page, case: Case, item: InputRow, row: int) -> None:
     page.put(row, NOTE, item.note or None, "note" if _lines(item.note, NOTE) == 1 else "note_wrap")
     shown = item.value if isinstance(item.value, str) else ""
     _limit(page, case, item, row)
-    _fit(page, row, ((shown, VALUE), (shown, AS_RUN), (item.note, NOTE)))
+    _fit(page, row, ((item.words, WORDS), (shown, VALUE), (shown, AS_RUN), (item.note, NOTE)))
 
 
 def _changed(row: int) -> str:
@@ -259,6 +259,8 @@ def value_style(item: InputRow) -> str:
         return "general"  # typed into a cell of text, TRUE would be a text
     if isinstance(value, str):
         return _text_style(value)
+    if isinstance(item.kind, CalendarDay):
+        return "text"  # so that what is typed into it stays as typed
     if item.unit == "year":
         return "year"
     if item.unit.startswith("%"):
@@ -270,6 +272,8 @@ def value_style(item: InputRow) -> str:
 
 def _typing_hint(item: InputRow) -> str:
     """A comment on texts that a spreadsheet would turn into a date or a number when they are typed again."""
+    if isinstance(item.kind, CalendarDay):
+        return "A day as year-month-day: 2026-12-01. Empty, it is the day of the run."
     if item.key in ("from", "to"):
         return "A day as text, month-day. Type an apostrophe first: '07-06"
     if item.path.startswith("drivers[") and item.key in ("low", "high"):

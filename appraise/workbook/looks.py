@@ -120,6 +120,7 @@ _FIXED: Mapping[str, Look] = {
     "unit_total": Look(colour=GREY, top="thin", border_colour=SLATE, across="left"),
     "note": Look(points=9, colour=GREY, across="left"),
     "note_wrap": Look(points=9, colour=GREY, across="left", upright="top", wrap=True),
+    "note_wrap_indent": Look(points=9, colour=GREY, across="left", upright="top", wrap=True, indent=1),
     "verdict": Look(points=14, bold=True, colour=ACCENT, across="left", wrap=True),
     "ok": Look(bold=True, colour=GOOD, fill=GOOD_FILL, across="center"),
     "fail": Look(bold=True, colour=WHITE, fill=BAD, across="center"),

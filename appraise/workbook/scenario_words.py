@@ -28,11 +28,11 @@ def best_words(best: Sequence[int], options: Sequence[str], baseline: int) -> st
     leader = int(np.argmax(counts))
     if counts[leader] == len(best):
         if leader == baseline:
-            return f"No option beats the plant as it stands ({options[leader]}) in any scenario."
-        return f"{options[leader]} is best in every scenario."
+            return f"No option beats the plant as it stands (“{options[leader]}”) in any scenario."
+        return f"“{options[leader]}” is best in every scenario."
     return (
-        f"No option is best in every scenario; {options[leader]} is best in {counts[leader]} of {len(best)}, "
-        f"the plant as it stands in {counts[baseline]}."
+        f"No option is best in every scenario; “{options[leader]}” is best in {counts[leader]} of "
+        f"{len(best)}, the plant as it stands in {counts[baseline]}."
     )
 
 
@@ -40,8 +40,9 @@ def regret_words(largest: Array, worst: Array, options: Sequence[str], currency:
     """The option with the least of the largest regrets, and what it is worth at worst."""
     calmest = int(np.argmin(largest))
     return (
-        f"{options[calmest]} leaves least to regret: at most {thousands(float(largest[calmest]), currency)} "
-        f"behind the best of a scenario, and {thousands(float(worst[calmest]), currency)} in its worst one."
+        f"“{options[calmest]}” leaves least to regret: at most "
+        f"{thousands(float(largest[calmest]), currency)} behind the best of a scenario, and "
+        f"{thousands(float(worst[calmest]), currency)} in its worst one."
     )
 
 
@@ -50,7 +51,7 @@ def best_formula(counts: str, names: str, scenarios: str, baseline: int) -> str:
 
     counts, names : rows of cells by option; scenarios : the matrix's titles; baseline : its position.
     """
-    leader = f"INDEX({names},1,MATCH(MAX({counts}),{counts},0))"
+    leader = f'"“"&INDEX({names},1,MATCH(MAX({counts}),{counts},0))&"”"'
     alone = f"MAX({counts})=ROWS({scenarios})"
     return (
         f"=IF({alone},IF(INDEX({counts},1,{baseline + 1})=ROWS({scenarios}),"
@@ -67,6 +68,6 @@ def regret_formula(largest: str, worst: str, names: str, currency: str) -> str:
     behind = thousands_formula(f"MIN({largest})", currency)
     at_worst = thousands_formula(f"INDEX({worst},1,{place})", currency)
     return (
-        f'=INDEX({names},1,{place})&" leaves least to regret: at most "&{behind}'
+        f'="“"&INDEX({names},1,{place})&"” leaves least to regret: at most "&{behind}'
         f'&" behind the best of a scenario, and "&{at_worst}&" in its worst one."'
     )

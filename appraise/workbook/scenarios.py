@@ -234,7 +234,7 @@ class _Scenarios:
             for n, title in enumerate(self.titles)
         )
         chart = bar_chart(
-            f"Net present value by scenario; {self.names[self.base]} is 0",
+            f"Net present value by scenario, against “{self.names[self.base]}”",
             [
                 Series(self.names[i], TITLE, area(self.matrix, TOTAL + i, self.worst - 1, TOTAL + i))
                 for i in others

@@ -48,7 +48,7 @@ def book_bytes(sheets: Sequence[Sheet], *, title: str, author: str, subject: str
     """A workbook with these sheets; the same sheets give the same bytes.
 
     title, author, subject : document properties; the title also stands in every page's header
-    footer : text at the foot of every page, beside the date of printing and the page number
+    footer : text at the foot of every page, beside the page number
     Raises SheetFault with every fault of the sheets.
     """
     check(sheets)
@@ -195,7 +195,7 @@ def _set_print(page: Any, sheet: Sheet, title: str, footer: str) -> None:
     page.oddHeader.left.text = header_text(title, HEADER_SHARE)
     page.oddHeader.right.text = header_text(sheet.title, HEADER_SHARE)
     page.oddFooter.left.text = header_text(footer, HEADER_SHARE)
-    page.oddFooter.right.text = "printed &D · page &P of &N"
+    page.oddFooter.right.text = "page &P of &N"
     page.HeaderFooter.scaleWithDoc = False  # as large on a page that is fitted as on any other
     if printing.repeat_rows:
         page.print_title_rows = "{}:{}".format(*printing.repeat_rows)
