@@ -9,8 +9,11 @@ from hypothesis import strategies as st
 from scalar.marrowby import marrowby
 
 from appraise.case.load import Case, case_from
+from appraise.case.plant import Heater
 from appraise.cycle.balance import Balance, design_balances
 from appraise.cycle.design import Design, OptionDesign, design, size_option
+from appraise.cycle.feedwater import Bleeds, FeedWater, feed_water
+from appraise.cycle.plant import PlantData, plant_data
 from appraise.cycle.solve import solve
 from appraise.cycle.stages import Train
 from appraise.cycle.task import Conditions, Solution, Task
@@ -69,6 +72,37 @@ def solved(made: Design, option: OptionDesign, points) -> Solution:
     at = Conditions(heat, back, supply)
     return solve(
         Task(made.plant, option.train, option.sizes, made.reference, at, np.zeros(heat.size, dtype=bool))
+    )
+
+
+def ideal_feed(
+    h1: float, s1: float, boiler_bar: float, deaerator_bar: float, heater: Heater | None = None
+) -> PlantData:
+    """The plant around an open feed heater, with ideal pumps and maybe a closed heater behind them."""
+    return replace(
+        plant_data(case_of(marrowby())),
+        h1=h1,
+        s1=s1,
+        boiler_bar=boiler_bar,
+        blowdown_share=0.0,
+        deaerator_bar=deaerator_bar,
+        pump_efficiency=1.0,
+        heater=heater,
+    )
+
+
+def fed(plant: PlantData, condensate_kJ_kg: float, eff: float = 1.0) -> FeedWater:
+    """The open feed heater of such a plant on a bleed of its own pressure, 1 kg/s of condensate."""
+    one = np.ones(1)
+    heater_bar = None if plant.heater is None else plant.heater.bleed_bar * one
+    return feed_water(
+        plant,
+        condensate_kg_s=one,
+        condensate_kJ_kg=condensate_kJ_kg * one,
+        bleeds=Bleeds(plant.deaerator_bar * one, heater_bar),
+        deaerator_bar=plant.deaerator_bar * one,
+        efficiency=eff * one,
+        on_live_steam=np.zeros(1, dtype=bool),
     )
 
 

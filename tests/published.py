@@ -44,6 +44,15 @@ class Published:
         )
 
 
+def check_within(file: str, table: str, calculated: float) -> None:
+    """Fail, naming the source, where a value lies outside a published range, a table of `low` and `high`."""
+    low, high = (values(file, table)[end] for end in ("low", "high"))
+    assert low.value - low.tolerance <= float(calculated) <= high.value + high.tolerance, (
+        f"{table}: {calculated!r} {low.unit}, published {low.value:g} to {high.value:g}, "
+        f"{low.status} ({low.source})"
+    )
+
+
 def half_last_digit(printed: str) -> float:
     """Half a unit of the last digit printed, with a hair for the binary rounding of the half itself."""
     exponent = Decimal(printed).as_tuple().exponent

@@ -43,7 +43,8 @@ def tolerance(table: Mapping[str, Any]) -> str:
 
 def checked_in(file: str, table: str) -> list[str]:
     """The tests that name a file and its table, or the example whose printed and recomputed values it has."""
-    names = {f'"{name}"' for name in (table, table.removesuffix(", book"), table.removesuffix(", IF97"))}
+    example, _, _ = table.partition(",")
+    names = (f'"{table}"', f'"{example}":')  # the latter is a key in a mapping of examples
     sources = _sources().items()
     return [test for test, text in sources if f'"{file}"' in text and any(name in text for name in names)]
 

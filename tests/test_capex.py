@@ -1,18 +1,24 @@
 """Capital: the order of index, exchange, location and shares; ranges; what is refused and what is said."""
 
+import re
+import tomllib
 from dataclasses import replace
+from pathlib import Path
 
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 from money_case import money_case
+from published import published, values
 
 from appraise.capex import capital, estimate_class
 from appraise.case.money import SIZE_NAMES
+from appraise.correlations import Source
 from appraise.errors import CaseError
 from appraise.published_costs import PUBLISHED
 from appraise.sizing import OptionSize, StageSize
 
+ROOT = Path(__file__).parents[1]
 LAW = settings(derandomize=True, deadline=None, max_examples=60)
 NOTHING = StageSize(1, False, **dict.fromkeys(SIZE_NAMES, 0.0))
 BASE = OptionSize("single", (NOTHING,))
@@ -94,6 +100,93 @@ def test_multiplier_is_on_the_total() -> None:
     assert option.total == pytest.approx(220.0)
     assert option.low == pytest.approx(2.0 * (90.0 + 8.0))
     assert option.high == pytest.approx(2.0 * (150.0 + 13.0))
+
+
+# --- published indices and factors -------------------------------------------------------------------------
+
+CEPCI = published("cost", "CEPCI") + published("cost", "CEPCI, 1983 to 1985")
+BY_YEAR = {int(row.given["year"]): row.value for row in sorted(CEPCI, key=lambda row: row.given["year"])}
+WHOLE_INDEX = {"year": list(BY_YEAR), "value": list(BY_YEAR.values())}
+
+
+@pytest.mark.parametrize("row", CEPCI, ids=str)
+def test_money_of_every_year_of_the_index(row) -> None:
+    _, option = priced([{"key": "a", "amount": 1.0, "year": int(row.given["year"])}], index=WHOLE_INDEX)
+    row.check(BY_YEAR[2023] / option.items[0].index_factor)
+
+
+def sources() -> dict[str, Source]:
+    """Sources of the published correlations, by author."""
+    return {
+        re.split(r"-\d{4}-", name)[0].replace("-", "_"): found.source for name, found in PUBLISHED.items()
+    }
+
+
+def test_indices_of_the_sources() -> None:
+    """At the base date, and the average of its year."""
+    rows = values("cost", "CEPCI of the sources") | values("cost", "CEPCI of January 2010")
+    assert rows.keys() == sources().keys()
+    for author, source in sources().items():
+        rows[author].check(source.index)
+        assert source.annual_index == BY_YEAR[source.year]
+
+
+@pytest.mark.parametrize("file", ["inputs", "appraise/starter"])
+def test_index_of_the_demo(file: str) -> None:
+    """Its years from 2024 on are invented, and it says so."""
+    text = (ROOT / file / "marrowby.toml").read_text(encoding="utf-8")
+    index = tomllib.loads(text)["capex"]["index"]
+    for year, value in zip(index["year"], index["value"], strict=True):
+        assert year >= 2024 or value == BY_YEAR[year]
+
+
+def test_escalation_to_2023() -> None:
+    rows = values("cost", "Escalation to 2023")
+    items = [
+        {"key": "of-1982", "amount": 1.0, "year": 1982},
+        {"key": "turton", "correlation": {"name": "turton-2001-shell-and-tube-u-tube"}},
+        {"key": "towler", "correlation": {"name": "towler-2010-shell-and-tube-u-tube"}},
+    ]
+    _, option = priced(items, currency="USD", index=WHOLE_INDEX)
+    for item in option.items:
+        rows[item.key.replace("-", "_")].check(item.index_factor)
+
+
+def shares_of(row, *names: str) -> list[dict]:
+    """Items that are each a percentage of the equipment, as given beside a printed total."""
+    return [{"key": name, "share_of": "equipment", "share": row.given[name] / 100.0} for name in names]
+
+
+RETROFIT = ("erection", "instruments", "piping", "electrical")
+
+
+@pytest.mark.parametrize("edition", ["Peters and Timmerhaus, 4th ed.", "Peters and Timmerhaus, 5th ed."])
+def test_ratio_factors_add_up(edition: str) -> None:
+    """From delivered equipment to installed in an existing house, to direct and to all cost."""
+    rows = values("cost", edition)
+    direct = (
+        *RETROFIT,
+        *(name for name in ("buildings", "yard", "service", "land") if name in rows["total"].given),
+    )
+    for name, parts in (("retrofit", RETROFIT), ("direct", direct), ("total", tuple(rows["total"].given))):
+        if name in rows:
+            items = [{"key": "equipment", "amount": 100.0}, *shares_of(rows[name], *parts)]
+            rows[name].check(priced(items)[1].total)
+
+
+@pytest.mark.parametrize("example", ["Loh, low pressure", "Loh, example"])
+def test_setting_and_bulk_materials(example: str) -> None:
+    """Setting and each material as shares of the exchanger, labour as a share of its material."""
+    row = values("cost", example)["total"]
+    amount = row.given.get("amount", 1.0)
+    materials = [name.removesuffix("_labour") for name in row.given if name.endswith("_labour")]
+    items = [{"key": "equipment", "amount": amount}, *shares_of(row, "setting", *materials)]
+    for name in materials:
+        labour = row.given[f"{name}_labour"] / 100.0
+        whole, rest = int(labour), labour % 1.0  # a share is at most 1
+        parts = [1.0] * whole + [rest]
+        items += [{"key": f"{name}-{i}", "share_of": name, "share": share} for i, share in enumerate(parts)]
+    row.check(priced(items)[1].total)
 
 
 # --- whom an item belongs to -------------------------------------------------------------------------------
@@ -316,3 +409,26 @@ def test_estimate_class_follows_what_the_equipment_rests_on() -> None:
         assert f"{share} of the equipment rests on quotations" in text
         assert "AACE International 18R-97" in text
     assert estimate_class(priced([])[1])[0] == 5
+
+
+@pytest.mark.parametrize("number", [4, 5])
+def test_usual_accuracy_is_that_of_the_class(number: int) -> None:
+    rows = (
+        values("cost", "Estimate of class 5")
+        if number == 5
+        else values("cost", "Estimate of class 4, wide ends")
+        | values("cost", "Estimate of class 4, narrow ends")
+    )
+    quoted = [{"key": "tail", "amount": 1.0}] if number == 4 else []
+    found, text = estimate_class(priced(quoted)[1])
+    assert found == number
+    ends = re.search(r"accuracy (-\d+) to (-\d+) % and \+(\d+) to \+(\d+) %", text)
+    assert ends is not None
+    for name, end in zip(("low_narrow", "low_wide", "high_narrow", "high_wide"), ends.groups(), strict=True):
+        rows[name].check(float(end))
+
+
+def test_an_item_without_a_band_has_the_narrow_one_of_a_screening() -> None:
+    rows, (item,) = values("cost", "Estimate of class 5"), priced([{"key": "a", "amount": 100.0}])[1].items
+    rows["low_narrow"].check(item.low - 100.0)
+    rows["high_narrow"].check(item.high - 100.0)

@@ -8,6 +8,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from money_case import flow_of, increment, money_case
 from published import published, values
+from scipy.optimize import brentq
 
 from appraise.capex import OptionCapital
 from appraise.case.money import Depreciation
@@ -160,6 +161,20 @@ def test_table_that_outlives_the_plant_is_finished_in_the_last_year() -> None:
     assert short == pytest.approx([*percent[:4], 100.0 - sum(percent[:4])], rel=1e-12)
 
 
+@pytest.mark.parametrize(
+    "schedule",
+    ["MACRS 3 years", "MACRS 5 years", "MACRS 7 years", "MACRS 10 years", "MACRS 15 years", "MACRS 20 years"],
+)
+def test_published_schedules_are_taken_as_they_are(schedule: str) -> None:
+    """They add up to the whole book, so nothing is refused and nothing is left for the last year."""
+    rows = published("finance", schedule)
+    plan = Depreciation(method="table", shares=[row.value / 100.0 for row in rows])
+    charges = 100.0 * depreciation_shares(plan, 25)
+    assert not charges[len(rows) :].any()
+    for row, charge in zip(rows, charges, strict=False):
+        row.check(charge)
+
+
 def test_table_that_does_not_add_up_leaves_the_rest_to_its_last_year() -> None:
     plan = Depreciation(method="table", shares=[0.5, 0.2])
     assert depreciation_shares(plan, 4) == pytest.approx([0.5, 0.5, 0.0, 0.0], abs=1e-15)
@@ -235,6 +250,22 @@ def test_fisher_by_number() -> None:
             finance={"basis": basis, "discount_rate": rate, "inflation": 0.02},
         )
         rows["npv"].check(float(flow_of(case, increment(15, weighted=3.0), 1000.0).npv))
+
+
+def test_real_rate_behind_a_nominal_one() -> None:
+    """The real rate at which the same flows are worth the same: 10 % nominal, 4 % inflation."""
+
+    def worth(basis: str, rate: float) -> float:
+        case = money_case(
+            study={"price_year": 2026, "first_year": 2027, "years": 15},
+            opex={"fixed_share_of_capex": 0.0},
+            finance={"basis": basis, "discount_rate": rate, "inflation": 0.04},
+        )
+        return float(flow_of(case, increment(15, weighted=3.0), 1000.0).npv)
+
+    wanted = worth("nominal", 0.10)
+    real = brentq(lambda rate: worth("real", rate) - wanted, 0.0, 0.1, xtol=1e-12)
+    values("finance", "Real rate")["percent"].check(100.0 * real)
 
 
 @LAW

@@ -55,6 +55,18 @@ def test_present_worth_of_a_series(row) -> None:
     row.check(float(net_present_value(row.given["rate"], [0.0] + [1.0] * years)))
 
 
+@pytest.mark.parametrize("row", published("finance", "Capital recovery"), ids=str)
+def test_capital_recovery(row) -> None:
+    years = int(row.given["years"])
+    row.check(1.0 / float(net_present_value(row.given["rate"], [0.0] + [1.0] * years)))
+
+
+@pytest.mark.parametrize("row", published("finance", "Present worth of one sum"), ids=str)
+def test_present_worth_of_one_sum(row) -> None:
+    years = int(row.given["years"])
+    row.check(float(net_present_value(row.given["rate"], [0.0] * years + [1.0])))
+
+
 @pytest.mark.parametrize("row", published("finance", "Projects S and L"), ids=str)
 def test_projects_through_the_whole_cash_flow(row) -> None:
     found = measures(plain_flow(flows(row)))

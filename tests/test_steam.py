@@ -66,6 +66,22 @@ def test_both_ends_of_the_dome(row: Published) -> None:
     row.check(saturated(row.name, row.given["p"]))
 
 
+@pytest.mark.parametrize("row", published("steam", "IAPWS-95 less IF97"), ids=str)
+def test_distance_to_the_scientific_formulation(row: Published) -> None:
+    """What stands between this package and tables made with IAPWS-95: up to 0.23 kJ/kg."""
+    from CoolProp.CoolProp import PropsSI
+
+    name, quality = row.name[1:], float(row.name.endswith("g"))
+    scientific = PropsSI(name[0].upper(), "P", row.given["p"] * 1e5, "Q", quality, "HEOS::Water") / 1e3
+    row.check(scientific - saturated(name, row.given["p"]))
+
+
+@pytest.mark.parametrize("row", published("steam", "Deaerators"), ids=str)
+def test_water_boils_at_the_gauge_pressure_of_a_deaerator(row: Published) -> None:
+    """Standard atmosphere: 101.325 kPa."""
+    row.check(saturated("T", (101.325 + row.given["kPa_gauge"]) / 100.0))
+
+
 @pytest.mark.parametrize("p_bar", [0.01, 0.3, 1.0, 5.0, 60.0, 160.0])
 def test_liquid_at_the_dome_is_the_limit_of_compressed_liquid(p_bar: float) -> None:
     """The only property of the dome without a published row: vf, against region 1 a hair below boiling."""
@@ -130,7 +146,7 @@ def test_superheated_temperature_agrees_with_the_backward_equation_and_inverts_t
 @pytest.mark.parametrize("row", ABOVE_CRITICAL, ids=str)
 def test_superheat_above_the_critical_pressure_is_refused(row: Published) -> None:
     of = "h" if "h" in row.given else "s"
-    with pytest.raises(SolveError, match="Pressure out of range"):
+    with pytest.raises(SolveError, match=r"no temperature at .* bar, saturation"):
         INVERSES[of][0](row.given["p"] * 10.0, row.given[of])
 
 
@@ -181,7 +197,7 @@ def name_of(value: object) -> str:
 def test_a_value_that_is_not_finite_raises(function, bad: float) -> None:
     with pytest.raises(SolveError):
         function(bad)
-    with pytest.raises(SolveError, match="element 1 of 3 is not finite"):
+    with pytest.raises(SolveError, match="element 1 of 3"):
         function(np.array([1.0, bad, 2.0]))
 
 
@@ -191,7 +207,7 @@ def test_a_pair_that_is_not_finite_raises(function, second: float, bad: float) -
     for pair in ((bad, second), (1.0, bad)):
         with pytest.raises(SolveError):
             function(*pair)
-        with pytest.raises(SolveError, match="element 2 of 3 is not finite"):
+        with pytest.raises(SolveError, match="element 2 of 3"):
             function(*(np.array([good, good, x]) for good, x in zip((1.0, second), pair, strict=True)))
 
 
@@ -200,7 +216,7 @@ def test_a_pair_that_is_not_finite_raises(function, second: float, bad: float) -
 def test_a_pressure_off_the_saturation_line_raises(function, p_bar: float) -> None:
     with pytest.raises(SolveError, match="IAPWS-IF97"):
         function(p_bar)
-    with pytest.raises(SolveError, match="element 0 of 2 is not finite"):
+    with pytest.raises(SolveError, match="element 0 of 2"):
         function([p_bar, 1.0])
 
 
