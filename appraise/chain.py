@@ -83,13 +83,11 @@ def solve_physics(case: Case, hours: Hours, known: Physics | None = None) -> Phy
 def _years(
     case: Case, hours: Hours, made: Design, keys: Mapping[str, Hashable], known: Physics | None
 ) -> Years:
-    """The years, with the runs of options that `known` has already."""
+    """The years, begun where those of `known` came to rest, with the runs of options that it has already."""
     if known is None or known.hours is not hours:
         return solve_years(case, hours, made)
     same = {key for key, value in keys.items() if known.option_keys.get(key) == value}
-    if case.baseline.key not in same:
-        return solve_years(case, hours, made)
-    return solve_years(case, hours, made, known.years, same)
+    return solve_years(case, hours, made, known.years, same if case.baseline.key in same else ())
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -27,13 +27,18 @@ MOISTURE_LIMIT = 0.12  # common practice for last blades without special protect
 
 @dataclass(frozen=True, slots=True)
 class Check:
-    """One question put to the results. `value` and `limit` are None where there is nothing to measure."""
+    """One question put to the results. `value` and `limit` are None where there is nothing to measure.
+
+    option, item : keys of the option and of the capital item that it is about; `name` ends with them
+    """
 
     name: str
     passed: bool
     value: float | None
     limit: float | None
     message: str
+    option: str | None = None
+    item: str | None = None
 
 
 def checks(
@@ -60,8 +65,9 @@ def checks(
     )
 
 
-def _limited(name: str, value: float, limit: float, message: str) -> Check:
-    return Check(name, bool(value <= limit), float(value), limit, message)
+def _limited(name: str, value: float, limit: float, message: str, option: str | None = None) -> Check:
+    full = name if option is None else f"{name}, {option}"
+    return Check(full, bool(value <= limit), float(value), limit, message, option)
 
 
 def _all_years(physics: Physics, option: int) -> tuple[OptionYear, ...]:
@@ -126,7 +132,7 @@ def _left_at_irr(flow: CashFlow) -> float:
 
 
 def _when(hours: Hours, index: int) -> str:
-    return str(hours.time[index]).replace("T", " ") if index >= 0 else "the design point"
+    return f"{hours.time[index].item():%Y-%m-%d %H:%M}" if index >= 0 else "the design point"
 
 
 def _moisture(hours: Hours, physics: Physics) -> Iterator[Check]:
@@ -138,11 +144,12 @@ def _moisture(hours: Hours, physics: Physics) -> Iterator[Check]:
             + [(float(at_design[i]), i, -1) for i in range(option.train.number)]
         )
         yield _limited(
-            f"moisture, {option.train.key}",
+            "moisture",
             worst,
             MOISTURE_LIMIT,
             f"wettest exhaust is that of stage {stage + 1}, at {_when(hours, when)}; "
             "erosion of the last blades is for the turbine maker to judge",
+            option.train.key,
         )
 
 
@@ -154,11 +161,12 @@ def _flashing(physics: Physics) -> Iterator[Check]:
                 continue
             excess = float(shells.drain_C[i + 1, 0] - shells.saturation_C[i, 0])
             yield _limited(
-                f"drain into stage {i + 1}, {option.train.key}",
+                f"drain into stage {i + 1}",
                 excess,
                 0.0,
                 f"subcooled drain less saturation in the colder shell, K: "
                 f"{'it still flashes on entry; provide for it' if excess > 0 else 'no flashing'}",
+                option.train.key,
             )
 
 
@@ -176,10 +184,11 @@ def _existing(hours: Hours, physics: Physics) -> Iterator[Check]:
             peaks = [getattr(y.greatest, name) for y in _all_years(physics, index)]
             value, when = max((float(p.value[-1]), int(p.hour[-1])) for p in peaks)
             yield _limited(
-                f"{what}, {option.train.key}",
+                what,
                 value,
                 limit * (1.0 + 1e-12),
                 f"greatest flow or duty, {unit}, at {_when(hours, when)}, against the baseline's greatest",
+                option.train.key,
             )
 
 
@@ -188,10 +197,11 @@ def _design_limits(case: Case, physics: Physics) -> Iterator[Check]:
     for option in physics.design.options:
         flow = float(option.solution.feed.live_steam_kg_s[0])
         yield _limited(
-            f"live steam at the design point, {option.train.key}",
+            "live steam at the design point",
             flow,
             steam.max_kg_s,
             "kg/s; above the limit the option makes less heat than the design point asks for in such hours",
+            option.train.key,
         )
     if case.plant.condenser.max_heat_MW is not None:
         yield _limited(
@@ -203,6 +213,13 @@ def _design_limits(case: Case, physics: Physics) -> Iterator[Check]:
 
 
 def _hours(physics: Physics) -> Iterator[Check]:
+    idle = [base.hours(base.no_operation) for base in _all_years(physics, physics.years.baseline)]
+    yield _limited(
+        "hours without operation of the plant as it stands",
+        max(idle),
+        0.0,
+        "hours with heat enough but at temperatures it cannot serve; peak boilers make their heat",
+    )
     for index, option in enumerate(physics.years.solved[0]):
         if index == physics.years.baseline:
             continue
@@ -213,6 +230,7 @@ def _hours(physics: Physics) -> Iterator[Check]:
             borrowed,
             0.0,
             "hours in which the option has no steady operation of its own",
+            option.key,
         )
 
 
@@ -220,7 +238,8 @@ def _estimates(bought: tuple[OptionCapital, ...]) -> Iterator[Check]:
     for paid in bought:
         for item in paid.items:
             for warning in item.warnings:
-                yield Check(f"capital, {paid.option}, {item.key}", False, None, None, warning)
+                name = f"capital, {paid.option}, {item.key}"
+                yield Check(name, False, None, None, warning, paid.option, item.key)
 
 
 def _meters(case: Case, physics: Physics) -> Iterator[Check]:

@@ -19,13 +19,13 @@ from appraise.chain import Physics, Progress, case_npv
 from appraise.levers import MULTIPLIER, YEARS, Levers, with_numbers
 from appraise.numerics import Array
 from appraise.prices import scenario_prices
-from appraise.response import Response, Sums, fitted, node_probabilities, sums_of
+from appraise.response import Fineness, Response, Sums, fitted, node_probabilities, sums_of
 from appraise.sampling import correlated, latin_hypercube, quantile, wanted_correlation
 from appraise.workers import each
 
 _BLOCK = 2000  # draws whose money is held at once
-_HOUR_STEPS = (2, 1)  # the second only where the first is not accurate enough
-_DENSITY = (1.4, 2.0)
+# The second only where the first is not accurate enough.
+_FINENESS = (Fineness(2, 1.2, bent=False), Fineness(1, 2.4, bent=True))
 METHOD_LIMIT = 0.01
 FEWEST_CHECKED = 12
 
@@ -121,11 +121,11 @@ class _Draws:
         values = self._values(probability)
         checked = np.sort(random.choice(number, min(verify, number), replace=False))
         exact = self._in_full(values[checked], progress) if self.solved else None
-        for step, density in zip(_HOUR_STEPS, _DENSITY, strict=True):
-            npv, response = self._evaluated(values, step, density)
+        for fineness in _FINENESS:
+            npv, response = self._evaluated(values, fineness)
             error = None
             if exact is not None and response is not None:
-                error = self._error(npv, checked, exact, response, step)
+                error = self._error(npv, checked, exact, response, fineness.hour_step)
             if error is None or error.root_mean_square <= METHOD_LIMIT:
                 break
         progress(1.0, "draws")
@@ -167,12 +167,12 @@ class _Draws:
 
     # -- all draws
 
-    def _evaluated(self, values: Array, step: int, density: float) -> tuple[Array, Response | None]:
+    def _evaluated(self, values: Array, fineness: Fineness) -> tuple[Array, Response | None]:
         """NPV [draw, option] of all draws, and the response that made them if there is one."""
         data = self._longest(values)
         longest = case_from(data)
         if self.solved:
-            probability = node_probabilities(len(self.solved), density, self.case.draws.seed)
+            probability = node_probabilities(len(self.solved), fineness, self.case.draws.seed)
             nodes = np.zeros((len(probability), len(self.drivers)))
             for column, index in enumerate(self.solved):
                 distribution = self.drivers[index].distribution
@@ -180,7 +180,7 @@ class _Draws:
                 nodes[:, index] = quantile(distribution, probability[:, column])
             edits = [self._edited(data, row, self.solved) for row in nodes]
             response = fitted(
-                longest, self.hours, self.physics, self.scenario, edits, nodes[:, self.solved], step
+                longest, self.hours, self.physics, self.scenario, edits, nodes[:, self.solved], fineness
             )
         else:
             response = None

@@ -15,6 +15,8 @@ from appraise.errors import SolveError
 
 Array = NDArray[np.float64]
 
+_PIECES = 1024  # of a fit
+
 
 def chebyshev_basis(x: Array, number: int) -> Array:
     """First `number` Chebyshev polynomials at x [point] in [-1, 1]; returns [number, point]."""
@@ -48,35 +50,57 @@ def _coefficients(values: Array) -> Array:
 class Fit:
     """Several smooth functions of one variable, fitted together on [low, high].
 
-    `coefficients` is [function, order]. Calling with any shape gives [function, *shape].
+    A Chebyshev fit, cut into short cubics that agree with it to rounding and cost a third of the series.
+    `cubics` is [power, function, piece]. Calling with any shape gives [function, *shape].
     """
 
     low: float
     high: float
-    coefficients: Array
+    cubics: Array
 
     @classmethod
     def of(cls, function: Callable[[Array], Array], low: float, high: float, order: int) -> Fit:
         """Fit `function`, which maps [node] to [function, node]."""
-        return cls(low, high, _coefficients(np.atleast_2d(function(chebyshev_nodes(low, high, order)))))
+        values = np.atleast_2d(function(chebyshev_nodes(low, high, order)))
+        return cls.from_series(_coefficients(values), low, high)
+
+    @classmethod
+    def from_series(cls, coefficients: Array, low: float, high: float) -> Fit:
+        """From Chebyshev coefficients [function, order]; one more piece than needed holds the upper end."""
+        within = chebyshev_nodes(0.0, 1.0, 4)
+        unit = 2.0 * (np.arange(_PIECES + 1)[:, None] + within) / _PIECES - 1.0
+        values = coefficients @ chebyshev_basis(unit.ravel(), coefficients.shape[1])
+        powers = np.linalg.inv(np.vander(within, increasing=True))
+        cubics = powers @ values.reshape(len(coefficients), _PIECES + 1, 4, 1)
+        return cls(low, high, np.ascontiguousarray(np.moveaxis(cubics[..., 0], 2, 0)))
 
     def covers(self, x: Array) -> bool:
         """Whether every element of x lies in the fitted range."""
         return x.size == 0 or bool(x.min() >= self.low and x.max() <= self.high)
 
     def __call__(self, x: Array) -> Array:
-        unit = (2.0 * x.ravel() - (self.low + self.high)) / (self.high - self.low)
-        values = self.coefficients @ chebyshev_basis(unit, self.coefficients.shape[1])
-        return np.asarray(values.reshape(self.coefficients.shape[0], *x.shape))
+        part = (x.ravel() - self.low) * (_PIECES / (self.high - self.low))
+        piece = part.astype(np.intp)
+        part -= piece
+        values = self.cubics[3].take(piece, axis=1)
+        for power in (2, 1, 0):
+            values *= part
+            values += self.cubics[power].take(piece, axis=1)
+        return np.asarray(values.reshape(self.cubics.shape[1], *x.shape))
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Fit2:
-    """A smooth function of two variables on a rectangle; `coefficients` is [order x, order y]."""
+    """A smooth function of two variables on a rectangle.
+
+    `series` gives, along the variable with more terms (x where `along_x`), the Chebyshev coefficients in
+    the other.
+    """
 
     x: tuple[float, float]
     y: tuple[float, float]
-    coefficients: Array
+    series: Fit
+    along_x: bool
 
     @classmethod
     def of(
@@ -89,18 +113,18 @@ class Fit2:
         """Fit `function`, which maps two flat arrays to one of the same size."""
         nodes_x, nodes_y = chebyshev_nodes(*x, order[0]), chebyshev_nodes(*y, order[1])
         grid_x, grid_y = (g.ravel() for g in np.meshgrid(nodes_x, nodes_y, indexing="ij"))
-        values = function(grid_x, grid_y).reshape(order)
-        return cls(x, y, np.asarray(_coefficients(_coefficients(values).T).T))
+        terms = _coefficients(_coefficients(function(grid_x, grid_y).reshape(order)).T).T
+        along_x = order[0] >= order[1]
+        return cls(x, y, Fit.from_series(terms.T, *x) if along_x else Fit.from_series(terms, *y), along_x)
 
     def covers(self, x: Array, y: Array) -> NDArray[np.bool_]:
         """Element by element, whether the point lies in the fitted rectangle."""
         return np.asarray((x >= self.x[0]) & (x <= self.x[1]) & (y >= self.y[0]) & (y <= self.y[1]))
 
     def __call__(self, x: Array, y: Array) -> Array:
-        unit_x = (2.0 * x.ravel() - (self.x[0] + self.x[1])) / (self.x[1] - self.x[0])
-        unit_y = (2.0 * y.ravel() - (self.y[0] + self.y[1])) / (self.y[1] - self.y[0])
-        rows = self.coefficients @ chebyshev_basis(unit_y, self.coefficients.shape[1])
-        rows *= chebyshev_basis(unit_x, self.coefficients.shape[0])
+        long, short, (low, high) = (x, y, self.y) if self.along_x else (y, x, self.x)
+        rows = self.series(long.ravel())
+        rows *= chebyshev_basis((2.0 * short.ravel() - (low + high)) / (high - low), len(rows))
         return np.asarray(rows.sum(axis=0).reshape(x.shape))
 
 
@@ -116,9 +140,14 @@ def require_finite(name: str, values: ArrayLike) -> Array:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class FixedPoint:
-    """Where an iteration came to rest: `x` [unknown, point] and whether each point did."""
+    """Where an iteration came to rest: `x` [unknown, point] and whether each point did.
+
+    `inverse` [unknown, unknown, point] is the inverse of -J as estimated on the way, J being the Jacobian of
+    step(x) - x.
+    """
 
     x: Array
+    inverse: Array
     converged: NDArray[np.bool_]
 
 
@@ -126,27 +155,32 @@ def fixed_point(
     step: Callable[[Array, NDArray[np.intp]], Array],
     start: Array,
     *,
+    inverse: Array | None = None,
     tolerance: float = 1e-11,
     iterations: int = 60,
 ) -> FixedPoint:
     """Solve x = step(x) for many points at once by Broyden's method (Broyden, Math. Comp. 19 (1965) 577).
 
     start : [unknown, point]. step : (x [unknown, active], indices of the active points) -> the improved x.
-    A plain substitution is the first step; each later one corrects the inverse Jacobian by a rank-one
-    update, point by point, so that unknowns which feed on each other do not slow one another down. Points
-    at rest to `tolerance` (absolute, on every unknown) leave the work.
+    inverse : as of an earlier, similar iteration; without it a plain substitution is the first step. Each
+    later step corrects the inverse Jacobian by a rank-one update, point by point, so that unknowns which feed
+    on each other do not slow one another down. Points at rest to `tolerance` (absolute, on every unknown)
+    leave the work.
     """
     number, points = start.shape
     x = start.copy()
     converged = np.zeros(points, dtype=bool)
     active = np.arange(points)
-    inverse = np.broadcast_to(np.eye(number)[:, :, None], (number, number, points)).copy()
+    if inverse is None:
+        inverse = np.broadcast_to(np.eye(number)[:, :, None], (number, number, points))
+    at_end = inverse.copy()
     residual = step(x, active) - x
     for _ in range(iterations):
         rest = np.abs(residual).max(axis=0) <= tolerance
         if rest.any():
             at_rest = active[rest]
             x[:, at_rest] += residual[:, rest]
+            at_end[:, :, at_rest] = inverse[:, :, rest]
             converged[at_rest] = True
             keep = ~rest
             active, residual, inverse = active[keep], residual[:, keep], inverse[:, :, keep]
@@ -157,7 +191,7 @@ def fixed_point(
         updated = step(x[:, active], active) - x[:, active]
         inverse = _broyden_update(inverse, move, updated - residual)
         residual = updated
-    return FixedPoint(x, converged)
+    return FixedPoint(x, at_end, converged)
 
 
 def _broyden_update(inverse: Array, move: Array, change: Array) -> Array:

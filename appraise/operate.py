@@ -9,7 +9,7 @@ from numpy.typing import NDArray
 
 from appraise.cycle.design import Design, OptionDesign
 from appraise.cycle.solve import solve
-from appraise.cycle.task import Conditions, Mask, Solution, Task, overlaid
+from appraise.cycle.task import Conditions, Mask, Rest, Solution, Task, overlaid
 from appraise.cycle.turbine import exhaust_state
 from appraise.demand import Demand
 from appraise.numerics import Array
@@ -34,8 +34,13 @@ class Run:
     at_fuel_limit: Mask
 
 
-def operate(made: Design, option: OptionDesign, asked: Demand, wanted: Mask) -> Run:
-    """Solve the wanted hours: at the demand, and at the first limit of the plant where that is less."""
+def operate(
+    made: Design, option: OptionDesign, asked: Demand, wanted: Mask, earlier: tuple[Rest, ...] = ()
+) -> Run:
+    """Solve the wanted hours: at the demand, and at the first limit of the plant where that is less.
+
+    earlier : where a similar option came to rest in these hours.
+    """
     plant, hour = made.plant, np.flatnonzero(wanted)
     heat = asked.heat_MW[hour]
     start = np.minimum(heat, _FAR_ABOVE_LIMIT * _limit_at_design(made))
@@ -46,6 +51,8 @@ def operate(made: Design, option: OptionDesign, asked: Demand, wanted: Mask) -> 
         made.reference,
         _conditions(made, asked, hour, start),
         np.zeros(hour.size, dtype=bool),
+        number=hour,
+        earlier=earlier,
     )
     solution = solve(task)
     over = np.flatnonzero((_use(made, solution) > 1.0).any(axis=0) | (start < heat))

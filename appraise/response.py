@@ -9,7 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, fields, replace
-from itertools import combinations
+from itertools import combinations, permutations
 from typing import Any
 
 import numpy as np
@@ -31,6 +31,19 @@ _EDGE = 0.002  # probability left out at either end of a distribution when nodes
 _EXTRA_NODES = 14
 
 Edit = Mapping[str, Any]
+
+
+@dataclass(frozen=True, slots=True)
+class Fineness:
+    """How finely a response is made.
+
+    hour_step : 1 for all hours, k for every k-th. density : nodes for each coefficient. bent : also fourth
+    powers, and products of a square and another driver, for plants that change their regime.
+    """
+
+    hour_step: int
+    density: float
+    bent: bool
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -108,7 +121,7 @@ def part_of(hours: Hours, heat_MW: Array, step: int) -> Hours:
 class Response:
     """Polynomial in the drivers, in units of their spread around their middle.
 
-    coefficients : [term, number]. nodes : how many it was fitted to.
+    coefficients : [term, number]. bent : see `Fineness`. nodes : how many it was fitted to.
     """
 
     middle: Array
@@ -116,32 +129,35 @@ class Response:
     coefficients: Array
     start: Sums
     scale: Array
+    bent: bool
     nodes: int
 
     def __call__(self, values: Array) -> Sums:
         """Sums at values of the drivers [draw, driver]."""
-        flat = _terms((values - self.middle) / self.spread) @ self.coefficients
+        flat = _terms((values - self.middle) / self.spread, self.bent) @ self.coefficients
         return self.start.like(flat * self.scale)
 
 
-def _terms(z: Array) -> Array:
-    """1, z, z², z³ of each driver and the products of pairs [point, term]."""
-    pairs = [z[:, i] * z[:, j] for i, j in combinations(range(z.shape[1]), 2)]
+def _terms(z: Array, bent: bool) -> Array:
+    """1, z, z², z³ of each driver and the products of pairs [point, term]; `bent` adds z⁴ and z² z'."""
+    drivers = range(z.shape[1])
+    pairs = [z[:, i] * z[:, j] for i, j in combinations(drivers, 2)]
     powers = [z**k for k in (1, 2, 3)]
-    return np.column_stack([np.ones(len(z)), *powers, *pairs])
+    more = [z**4, *(z[:, [i]] ** 2 * z[:, [j]] for i, j in permutations(drivers, 2))] if bent else []
+    return np.column_stack([np.ones(len(z)), *powers, *pairs, *more])
 
 
-def number_of_terms(drivers: int) -> int:
+def _number_of_terms(drivers: int, bent: bool) -> int:
     """How many coefficients a response of so many drivers has."""
-    return 1 + 3 * drivers + drivers * (drivers - 1) // 2
+    return int(_terms(np.zeros((1, drivers)), bent).shape[1])
 
 
-def node_probabilities(drivers: int, density: float, seed: int) -> Array:
+def node_probabilities(drivers: int, fineness: Fineness, seed: int) -> Array:
     """Where to solve [node, driver]: scrambled Sobol points, denser towards the ends of the distributions.
 
     The arcsine spacing is that of Chebyshev's nodes: a polynomial through even spacing strays at its ends.
     """
-    number = round(density * (number_of_terms(drivers) + _EXTRA_NODES))
+    number = round(fineness.density * (_number_of_terms(drivers, fineness.bent) + _EXTRA_NODES))
     points = qmc.Sobol(drivers, rng=np.random.default_rng(seed)).random_base2(int(np.ceil(np.log2(number))))
     return np.asarray(np.clip(0.5 - 0.5 * np.cos(np.pi * points[:number]), _EDGE, 1.0 - _EDGE))
 
@@ -153,16 +169,15 @@ def fitted(
     scenario: str,
     edits: Sequence[Edit],
     values: Array,
-    step: int,
+    fineness: Fineness,
 ) -> Response:
     """Solve the nodes and fit. edits : data of the case at each node; values : of its drivers [node, driver].
 
-    step : 1 for all hours, k for every k-th. Nodes that cannot be built are left out; raises SolveError where
-    too few are left.
+    Nodes that cannot be built are left out; raises SolveError where too few are left.
     """
     from appraise.demand import demand
 
-    reduced = part_of(hours, demand(case, hours).heat_MW, step)
+    reduced = part_of(hours, demand(case, hours).heat_MW, fineness.hour_step)
     start = sums_of(case, hours, physics, scenario)
     known = solve_physics(case, reduced)
 
@@ -175,13 +190,14 @@ def fitted(
 
     rows = list(each(solved, edits))
     kept = [index for index, row in enumerate(rows) if row is not None]
-    if len(kept) < number_of_terms(values.shape[1]) + 2:
+    if len(kept) < _number_of_terms(values.shape[1], fineness.bent) + 2:
         raise SolveError(f"draws: only {len(kept)} of {len(rows)} nodes of the response could be solved")
     middle, spread = values.mean(axis=0), values.std(axis=0)
     spread = np.where(spread > 0, spread, 1.0)
     base = sums_of(case, reduced, known, scenario).flat()
     target = np.array([rows[index] for index in kept])
-    coefficients = np.linalg.lstsq(_terms((values[kept] - middle) / spread), target, rcond=None)[0]
+    terms = _terms((values[kept] - middle) / spread, fineness.bent)
+    coefficients = np.linalg.lstsq(terms, target, rcond=None)[0]
     whole = start.flat()
     scale = np.divide(whole, base, out=np.ones_like(whole), where=base != 0.0)
-    return Response(middle, spread, np.asarray(coefficients), start, scale, len(kept))
+    return Response(middle, spread, np.asarray(coefficients), start, scale, fineness.bent, len(kept))

@@ -16,7 +16,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from appraise.errors import SolveError
-from appraise.numerics import Array, require_finite
+from appraise.numerics import Array
 
 # The library then loads in a tenth of the time; IF97 does not use these tables.
 os.environ.setdefault("COOLPROP_DISABLE_SUPERANCILLARIES_ENTIRELY", "1")
@@ -50,10 +50,40 @@ def _call(output: str, name1: str, value1: Array, name2: str, value2: Array) -> 
     if first.size == 0:
         return np.zeros(first.shape)
     try:
-        flat = PropsSI(output, name1, first.ravel(), name2, second.ravel(), _FLUID)
-    except ValueError as error:
-        raise SolveError(f"steam property {output}({name1}, {name2}) outside IAPWS-IF97: {error}") from None
-    return require_finite(f"steam property {output}({name1}, {name2})", flat).reshape(first.shape)
+        flat = np.asarray(PropsSI(output, name1, first.ravel(), name2, second.ravel(), _FLUID))
+    except ValueError:  # no element of them has a value
+        flat = np.full(first.size, np.nan)
+    bad = np.flatnonzero(~np.isfinite(flat))
+    if bad.size:
+        state = (f"{_shown(name, v.ravel()[bad[0]])}" for name, v in ((name1, first), (name2, second)))
+        raise SolveError(
+            f"the steam tables (IAPWS-IF97) have no {_WORDS[output]} at {', '.join(state)} "
+            f"(element {bad[0]} of {flat.size})"
+        )
+    return flat.reshape(first.shape)
+
+
+_WORDS = {
+    "T": "temperature",
+    "P": "pressure",
+    "H": "enthalpy",
+    "S": "entropy",
+    "D": "density",
+    "C": "heat capacity",
+}
+
+
+def _shown(name: str, value: float) -> str:
+    """One coordinate of a state, SI, in the units of the house."""
+    if name == "Q":
+        return "saturation"
+    scale, offset, unit = {
+        "P": (1 / _PASCAL, 0.0, "bar"),
+        "T": (1.0, _KELVIN, "°C"),
+        "H": (1e-3, 0.0, "kJ/kg"),
+        "S": (1e-3, 0.0, "kJ/(kg K)"),
+    }[name]
+    return f"{value * scale - offset:g} {unit}"
 
 
 def saturation_temperature_p(pressure_bar: ArrayLike) -> Array:

@@ -1,15 +1,17 @@
 """Fast steam properties: Chebyshev fits of the direct functions of `steam`, made once per process.
 
 The hourly solve needs some millions of points, and a fit costs a tenth of a library call. The fits agree with
-the library to 1e-9 of the value (a test measures it); outside the fitted range the library itself is called,
-so a value is never extrapolated. Units as in `steam`: bar, °C, kJ/kg, kJ/(kg K), m3/kg.
+the library to 1e-9 of the value (a test measures it); outside the fitted ranges the library itself is
+called, so a value is never extrapolated. Exhausts lie in the first range of a property, bleeds at higher
+pressure in the later ones, each fitted when a point first falls into it. Units as in `steam`: bar, °C, kJ/kg,
+kJ/(kg K), m3/kg.
 """
 
 from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
-from functools import cache
+from functools import cache, partial
 
 import numpy as np
 from numpy.typing import NDArray
@@ -25,8 +27,6 @@ from appraise.steam import (
     saturation_pressure_t,
     saturation_temperature_p,
     superheated_temperature,
-    superheated_temperature_ph,
-    superheated_temperature_ps,
     vapour_enthalpy_p,
     vapour_entropy_p,
     vapour_volume_p,
@@ -35,7 +35,30 @@ from appraise.steam import (
 
 Mask = NDArray[np.bool_]
 
-_LOWEST_BAR, _HIGHEST_BAR = 0.00612, 19.0  # range of the saturation fits
+Property = Callable[[Array, Array], Array]
+Rectangles = tuple[tuple[tuple[float, float], tuple[float, float]], ...]
+
+# Up to 165.2 bar, because above 165.29 IAPWS-IF97 has another equation for the vapour. The two overlap a
+# little, so that rounding leaves no point between them.
+_SATURATED_BAR = ((0.00612, 19.0), (18.999, 165.2))
+
+
+def _superheated(spans: tuple[float, float, float]) -> Rectangles:
+    """Ranges of ln p and of the excess over the saturated vapour."""
+    edges = [float(x) for x in np.log([0.01, 9.0, 60.0, 165.2])]
+    return tuple(((edges[i], edges[i + 1]), (0.0, span)) for i, span in enumerate(spans))
+
+
+# The excess goes to 620 °C, the hottest live steam, in the two ranges of high pressure.
+_SUPERHEATED = {"H": _superheated((700.0, 975.0, 1065.0)), "S": _superheated((1.4, 1.52, 1.48))}
+_SUPERHEATED_TERMS = ((22, 36), (16, 30), (16, 30))
+# Liquid: temperature and excess of pressure over saturation, to the boiler's greatest.
+_LIQUID: Rectangles = (
+    ((2.0, 208.0), (0.0, 30.0)),
+    ((2.0, 208.0), (0.0, 200.0)),
+    ((208.0, 349.0), (0.0, 200.0)),
+)
+_LIQUID_TERMS = ((24, 5), (24, 8), (28, 16))
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -58,87 +81,113 @@ def _dome_rows(p: Array) -> Array:
 
 
 @cache
-def _temperature_fit() -> Fit:
-    low, high = np.log([_LOWEST_BAR, _HIGHEST_BAR])
+def _temperature_fit(number: int) -> Fit:
+    low, high = np.log(_SATURATED_BAR[number])
     return Fit.of(lambda x: saturation_temperature_p(np.exp(x)), float(low), float(high), 24)
 
 
 @cache
-def _pressure_fit() -> Fit:
-    low, high = saturation_temperature_p([_LOWEST_BAR, _HIGHEST_BAR])
+def _pressure_fit(number: int) -> Fit:
+    low, high = saturation_temperature_p(_SATURATED_BAR[number])
     return Fit.of(lambda t: np.log(saturation_pressure_t(t)), float(low), float(high), 24)
 
 
 @cache
-def _dome_fit() -> Fit:
+def _dome_fit(number: int) -> Fit:
     """hf, hg, sf, sg, vf and ln vg over the saturation temperature."""
-    low, high = saturation_temperature_p([_LOWEST_BAR, _HIGHEST_BAR])
+    low, high = saturation_temperature_p(_SATURATED_BAR[number])
     return Fit.of(lambda t: _dome_rows(saturation_pressure_t(t)), float(low), float(high), 24)
+
+
+def _saturated(fits: Callable[[int], Fit], x: Array, direct: Callable[[Mask], Array]) -> Array:
+    """Values [function, *shape of x] by the fit that reaches a point, by the library where none does."""
+    fit = fits(0)
+    if fit.covers(x):
+        return fit(x)
+    outside, above = ~((x >= fit.low) & (x <= fit.high)), fits(1)
+    rows = fit(np.where(outside, fit.low, x))
+    upper = outside & (x >= above.low) & (x <= above.high)
+    if upper.any():
+        rows[:, upper] = above(x[upper])
+    beyond = np.asarray(outside & ~upper)
+    if beyond.any():
+        rows[:, beyond] = direct(beyond)
+    return rows
 
 
 def saturation_pressure(temperature_C: Array) -> Array:
     """Fast saturation pressure, bar."""
-    fit = _pressure_fit()
-    if not fit.covers(temperature_C):
-        return saturation_pressure_t(temperature_C)
-    return np.asarray(np.exp(fit(temperature_C)[0]))
+    rows = _saturated(
+        _pressure_fit, temperature_C, lambda out: np.log(saturation_pressure_t(temperature_C[out]))
+    )
+    return np.asarray(np.exp(rows[0]))
 
 
 def saturation(pressure_bar: Array) -> Saturation:
     """Fast saturation state at a pressure: temperature, enthalpies, entropies and volumes of both phases."""
     x = np.log(pressure_bar)
-    fit = _temperature_fit()
-    t = fit(x)[0] if fit.covers(x) else saturation_temperature_p(pressure_bar)
-    return saturation_at(pressure_bar, t)
+    rows = _saturated(_temperature_fit, x, lambda out: saturation_temperature_p(pressure_bar[out]))
+    return saturation_at(pressure_bar, rows[0])
 
 
 def saturation_at(pressure_bar: Array, temperature_C: Array) -> Saturation:
     """As `saturation`, where the saturation temperature of that pressure is known already."""
-    dome = _dome_fit()
-    rows = dome(temperature_C) if dome.covers(temperature_C) else _dome_rows(pressure_bar)
+    rows = _saturated(_dome_fit, temperature_C, lambda out: _dome_rows(pressure_bar[out]))
     hf, hg, sf, sg, vf, log_vg = rows
     return Saturation(pressure_bar, temperature_C, hf, hg, sf, sg, vf, np.exp(log_vg))
 
 
-def _superheated_fit(value: Callable[[Array, Array], Array], span: float, base: str) -> Fit2:
-    """Fit a property of superheated steam over ln p and the excess over the saturated vapour."""
-    low, high = np.log([0.01, 9.0])
+def _by_range(
+    fits: Callable[[int], Fit2], rectangles: Rectangles, x: Array, y: Array, direct: Callable[[Mask], Array]
+) -> Array:
+    """Values by the first fit that reaches a point, by the library where none does."""
+    left = ~fits(0).covers(x, y)
+    if not left.any():
+        return fits(0)(x, y)
+    result = np.empty(x.shape)
+    result[~left] = fits(0)(x[~left], y[~left])
+    for number, ((left_x, right_x), (low_y, high_y)) in enumerate(rectangles[1:], 1):
+        here = left & (x >= left_x) & (x <= right_x) & (y >= low_y) & (y <= high_y)
+        if here.any():
+            result[here] = fits(number)(x[here], y[here])
+            left &= ~here
+    if left.any():
+        result[left] = direct(left)
+    return result
+
+
+def _entropy_rise(p: Array, t: Array) -> Array:
+    return entropy_pt(p, t) - vapour_entropy_p(p)
+
+
+def _enthalpy_rise(p: Array, t: Array) -> Array:
+    return enthalpy_pt(p, t) - vapour_enthalpy_p(p)
+
+
+def _volume_rise(p: Array, t: Array) -> Array:
+    return np.asarray(np.log(volume_pt(p, t) / vapour_volume_p(p)))
+
+
+@cache
+def _superheated_fit(rise: Property, base: str, number: int) -> Fit2:
+    """What a property rises over that of the saturated vapour, over ln p and the excess in h or s (base)."""
 
     def function(x: Array, excess: Array) -> Array:
         p = np.exp(x)
         start = vapour_enthalpy_p(p) if base == "H" else vapour_entropy_p(p)
-        return value(p, superheated_temperature(p, start + excess, base))
+        return rise(p, superheated_temperature(p, start + excess, base))
 
-    return Fit2.of(function, (float(low), float(high)), (0.0, span), (22, 36))
-
-
-@cache
-def _entropy_fit() -> Fit2:
-    return _superheated_fit(lambda p, t: entropy_pt(p, t) - vapour_entropy_p(p), 700.0, "H")
+    return Fit2.of(function, *_SUPERHEATED[base][number], _SUPERHEATED_TERMS[number])
 
 
-@cache
-def _volume_fit() -> Fit2:
-    return _superheated_fit(lambda p, t: np.log(volume_pt(p, t) / vapour_volume_p(p)), 700.0, "H")
+def _over_vapour(rise: Property, base: str, p: Array, value: Array, of_vapour: Array) -> Array:
+    """Rise of a property of superheated steam at pressure and enthalpy or entropy."""
 
+    def direct(out: Mask) -> Array:
+        return rise(p[out], superheated_temperature(p[out], value[out], base))
 
-@cache
-def _enthalpy_fit() -> Fit2:
-    return _superheated_fit(lambda p, t: enthalpy_pt(p, t) - vapour_enthalpy_p(p), 1.4, "S")
-
-
-def _superheated(
-    fit: Fit2, direct: Callable[[Array, Array], Array], p: Array, excess: Array, absolute: Array
-) -> Array:
-    """Value over that of the saturated vapour: by the fit where it reaches, by the library elsewhere."""
-    x = np.log(p)
-    inside = fit.covers(x, excess)
-    if inside.all():
-        return fit(x, excess)
-    result = np.empty(p.shape)
-    result[inside] = fit(x[inside], excess[inside])
-    result[~inside] = direct(p[~inside], absolute[~inside])
-    return result
+    fits = partial(_superheated_fit, rise, base)
+    return _by_range(fits, _SUPERHEATED[base], np.log(p), value - of_vapour, direct)
 
 
 def _wet_or_superheated(wet: Array, vapour: Array, superheated: Callable[[Mask], Array], dry: Mask) -> Array:
@@ -156,14 +205,7 @@ def enthalpy_ps(at: Saturation, entropy_kJ_kgK: Array) -> Array:
     wet = at.hf + (s - at.sf) / (at.sg - at.sf) * (at.hg - at.hf)
 
     def superheated(dry: Mask) -> Array:
-        p, sg = at.pressure_bar[dry], at.sg[dry]
-        return _superheated(
-            _enthalpy_fit(),
-            lambda p_, s_: enthalpy_pt(p_, superheated_temperature_ps(p_, s_)) - vapour_enthalpy_p(p_),
-            p,
-            s[dry] - sg,
-            s[dry],
-        )
+        return _over_vapour(_enthalpy_rise, "S", at.pressure_bar[dry], s[dry], at.sg[dry])
 
     return _wet_or_superheated(wet, at.hg, superheated, ~(s <= at.sg))
 
@@ -174,14 +216,7 @@ def entropy_ph(at: Saturation, enthalpy_kJ_kg: Array) -> Array:
     wet = at.sf + (h - at.hf) / (at.hg - at.hf) * (at.sg - at.sf)
 
     def superheated(dry: Mask) -> Array:
-        p = at.pressure_bar[dry]
-        return _superheated(
-            _entropy_fit(),
-            lambda p_, h_: entropy_pt(p_, superheated_temperature_ph(p_, h_)) - vapour_entropy_p(p_),
-            p,
-            h[dry] - at.hg[dry],
-            h[dry],
-        )
+        return _over_vapour(_entropy_rise, "H", at.pressure_bar[dry], h[dry], at.hg[dry])
 
     return _wet_or_superheated(wet, at.sg, superheated, ~(h <= at.hg))
 
@@ -193,16 +228,9 @@ def volume_ph(at: Saturation, enthalpy_kJ_kg: Array) -> Array:
     dry = np.asarray(~(h <= at.hg))  # not "h > hg": a missing value must reach the library, which is loud
     if not dry.any():
         return wet
-    p, excess = at.pressure_bar[dry], h[dry] - at.hg[dry]
-    ratio = _superheated(
-        _volume_fit(),
-        lambda p_, h_: np.log(volume_pt(p_, superheated_temperature_ph(p_, h_)) / vapour_volume_p(p_)),
-        p,
-        excess,
-        h[dry],
-    )
     result = np.asarray(wet).copy()
-    result[dry] = at.vg[dry] * np.exp(ratio)
+    rise = _over_vapour(_volume_rise, "H", at.pressure_bar[dry], h[dry], at.hg[dry])
+    result[dry] = at.vg[dry] * np.exp(rise)
     return result
 
 
@@ -210,45 +238,37 @@ def volume_ph(at: Saturation, enthalpy_kJ_kg: Array) -> Array:
 
 
 @cache
-def _liquid_fits() -> tuple[Fit2, Fit2]:
-    """Enthalpy and volume of liquid over temperature and excess of pressure over saturation."""
+def _liquid_fit(library: Property, number: int) -> Fit2:
+    """A property of liquid over temperature and excess of pressure over saturation."""
 
-    def state(t: Array, excess: Array) -> tuple[Array, Array]:
+    def function(t: Array, excess: Array) -> Array:
         # At zero excess the library cannot tell liquid from vapour: a hair above saturation it can.
-        return saturation_pressure_t(t) * (1 + 1e-9) + excess, t
+        return library(saturation_pressure_t(t) * (1 + 1e-9) + excess, t)
 
-    ranges = (2.0, 208.0), (0.0, 30.0)
-    return (
-        Fit2.of(lambda t, e: enthalpy_pt(*state(t, e)), *ranges, (24, 5)),
-        Fit2.of(lambda t, e: volume_pt(*state(t, e)), *ranges, (24, 5)),
-    )
+    return Fit2.of(function, *_LIQUID[number], _LIQUID_TERMS[number])
 
 
-def _liquid(which: int, pressure_bar: Array, temperature_C: Array) -> Array:
+def _liquid(library: Property, pressure_bar: Array, temperature_C: Array) -> Array:
     p, t = np.broadcast_arrays(pressure_bar, temperature_C)
     excess = p - saturation_pressure(t)
     # Rounding may put a saturated drain a hair below its saturation pressure.
     excess = np.where((excess < 0) & (excess > -1e-6 * p), 0.0, excess)
-    fit = _liquid_fits()[which]
-    inside = fit.covers(t, excess)
-    if inside.all():
-        return fit(t, excess)
-    direct = (enthalpy_pt, volume_pt)[which]
-    result = np.empty(t.shape)
-    result[inside] = fit(t[inside], excess[inside])
-    # A hair above saturation, as in the fit.
-    result[~inside] = direct(np.where(excess == 0.0, p * (1 + 1e-9), p)[~inside], t[~inside])
-    return result
+
+    def direct(out: Mask) -> Array:
+        # A hair above saturation, as in the fit.
+        return library(np.where(excess == 0.0, p * (1 + 1e-9), p)[out], t[out])
+
+    return _by_range(partial(_liquid_fit, library), _LIQUID, t, excess, direct)
 
 
 def liquid_enthalpy(pressure_bar: Array, temperature_C: Array) -> Array:
     """Enthalpy of compressed or just saturated water, kJ/kg."""
-    return _liquid(0, pressure_bar, temperature_C)
+    return _liquid(enthalpy_pt, pressure_bar, temperature_C)
 
 
 def liquid_volume(pressure_bar: Array, temperature_C: Array) -> Array:
     """Specific volume of compressed or just saturated water, m3/kg."""
-    return _liquid(1, pressure_bar, temperature_C)
+    return _liquid(volume_pt, pressure_bar, temperature_C)
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -259,8 +279,9 @@ class NetworkWater:
     """
 
     pressure_bar: float
-    _forward: Fit
-    _inverse: Fit
+    _enthalpy: Fit
+    _volume: Fit
+    _temperature: Fit
 
     @classmethod
     def at(cls, pressure_bar: float) -> NetworkWater:
@@ -269,15 +290,15 @@ class NetworkWater:
 
     def enthalpy(self, temperature_C: Array) -> Array:
         """h(T), kJ/kg."""
-        return np.asarray(self._water(self._forward, temperature_C, "temperature, °C")[0])
+        return np.asarray(self._water(self._enthalpy, temperature_C, "temperature, °C")[0])
 
     def volume(self, temperature_C: Array) -> Array:
         """v(T), m3/kg."""
-        return np.asarray(self._water(self._forward, temperature_C, "temperature, °C")[1])
+        return np.asarray(self._water(self._volume, temperature_C, "temperature, °C")[0])
 
     def temperature(self, enthalpy_kJ_kg: Array) -> Array:
         """T(h), °C."""
-        return np.asarray(self._water(self._inverse, enthalpy_kJ_kg, "enthalpy, kJ/kg")[0])
+        return np.asarray(self._water(self._temperature, enthalpy_kJ_kg, "enthalpy, kJ/kg")[0])
 
     def _water(self, fit: Fit, x: Array, name: str) -> Array:
         if not fit.covers(x):
@@ -292,16 +313,15 @@ class NetworkWater:
 @cache
 def _network_water(pressure_bar: float) -> NetworkWater:
     low, high = 0.0, float(saturation_temperature_p(pressure_bar)) - 0.1
-    forward = Fit.of(
-        lambda t: np.stack([enthalpy_pt(pressure_bar, t), volume_pt(pressure_bar, t)]), low, high, 24
-    )
-    ends = forward(np.array([low, high]))[0]
+    enthalpy = Fit.of(lambda t: enthalpy_pt(pressure_bar, t), low, high, 24)
+    volume = Fit.of(lambda t: volume_pt(pressure_bar, t), low, high, 24)
+    ends = enthalpy(np.array([low, high]))[0]
 
     def temperature(h: Array) -> Array:
         t = low + (h - ends[0]) / (ends[1] - ends[0]) * (high - low)
         for _ in range(30):
-            t = t - (forward(t)[0] - h) / 4.2
+            t = t - (enthalpy(t)[0] - h) / 4.2
         return np.asarray(t)
 
     inverse = Fit.of(temperature, float(ends[0]), float(ends[1]), 24)
-    return NetworkWater(pressure_bar, forward, inverse)
+    return NetworkWater(pressure_bar, enthalpy, volume, inverse)

@@ -5,7 +5,7 @@ Arrays are [hour], before availability, 0 where the plant stands still.
 
 from __future__ import annotations
 
-from collections.abc import Container
+from collections.abc import Container, Mapping
 from dataclasses import dataclass, fields
 from typing import TypeVar
 
@@ -15,7 +15,7 @@ from numpy.typing import NDArray
 from appraise.case.hours import Hours
 from appraise.case.load import Case
 from appraise.cycle.design import Design, OptionDesign
-from appraise.cycle.task import Mask
+from appraise.cycle.task import Mask, Rest
 from appraise.demand import Demand, changes, demand
 from appraise.numerics import Array
 from appraise.operate import Run, StageRows, least_heat, operate, stage_rows
@@ -83,8 +83,10 @@ class OptionYear:
     as_baseline: Mask
     below_tail_minimum: Mask  # of those: a tail section below its least flow
     could_gain: Mask  # the option could run, the baseline could not
+    no_operation: Mask  # of the baseline: enough heat is asked for, but at temperatures it cannot serve
     greatest: Greatest
     years: float
+    rests: tuple[Rest, ...]
 
     @property
     def at_limit(self) -> Mask:
@@ -94,6 +96,18 @@ class OptionYear:
     def hours(self, mask: Mask) -> float:
         """Hours a year in which a flag is set."""
         return float(np.count_nonzero(mask)) / self.years
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class YearRuns:
+    """Hours in which the baseline runs or is near its least flow, and the options of one year by key."""
+
+    near: Mask
+    options: Mapping[str, OptionYear]
+
+    def rests(self, key: str) -> tuple[Rest, ...]:
+        """Where an option of that key came to rest."""
+        return self.options[key].rests if key in self.options else ()
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -112,6 +126,11 @@ class Years:
     shares: tuple[float, ...]
     demand_MWh: float  # of the first operating year
 
+    def at(self, number: int) -> YearRuns:
+        """The runs of one knot, or of the last where there are fewer."""
+        number = min(number, len(self.solved) - 1)
+        return YearRuns(self.near[number], {one.key: one for one in self.solved[number]})
+
     def weights(self, number: int) -> Array:
         """Weights [operating year, knot] that give any year from the solved ones."""
         return lagrange_weights(np.array(self.knots, dtype=float), np.arange(number, dtype=float))
@@ -122,15 +141,15 @@ def solve_years(
 ) -> Years:
     """Solve the operating years that differ: one where nothing changes, else first, middle and last.
 
-    What lies between follows from the polynomial through them. known : years of a case with the same
-    baseline in the same hours, from which the options whose keys are in `same` are taken as they are.
+    What lies between follows from the polynomial through them. known : years of a similar case in the same
+    hours, to start from; the options whose keys are in `same` are taken from it as they are.
     """
     last = case.study.years - 1
     knots = tuple(sorted({0, last // 2, last})) if changes(case) else (0,)
     asked = [demand(case, hours, k) for k in knots]
     solved, near = [], []
     for number, one in enumerate(asked):
-        before = None if known is None else (known.near[number], known.solved[number])
+        before = None if known is None else known.at(number)
         runs, tried = solve_year(one, made, case.year.extra_running, before, same)
         solved.append(runs)
         near.append(tried)
@@ -156,37 +175,37 @@ def lagrange_weights(knots: Array, x: Array) -> Array:
 
 
 def solve_year(
-    asked: Demand,
-    made: Design,
-    extra_running: bool,
-    known: tuple[Mask, tuple[OptionYear, ...]] | None = None,
-    same: Container[str] = (),
+    asked: Demand, made: Design, extra_running: bool, known: YearRuns | None = None, same: Container[str] = ()
 ) -> tuple[tuple[OptionYear, ...], Mask]:
     """Run every option through the hours of one operating year, in the case's order.
 
     Returns the runs, and the hours in which the baseline runs or is near its least flow.
-    known : both of a year with the same baseline, where there is one; its options in `same` are taken over.
+    known : of a similar case in the same hours, to start from; its options in `same` are taken over.
     """
+    before = known or YearRuns(np.zeros(0, dtype=bool), {})
     base_key = made.baseline.train.key
-    if known is None:
-        base, near = _baseline_year(asked, made, extra_running)
-        done = {base_key: base}
+    if base_key in same:
+        base, near = before.options[base_key], before.near
     else:
-        near = known[0]
-        done = {one.key: one for one in known[1] if one.key == base_key or one.key in same}
-    return tuple(
-        done[option.train.key]
-        if option.train.key in done
-        else _option_year(
-            made, option, asked, operate(made, option, asked, near), done[base_key], extra_running
-        )
-        for option in made.options
-    ), near
+        base, near = _baseline_year(asked, made, extra_running, before.rests(base_key))
+
+    def run(option: OptionDesign) -> OptionYear:
+        key = option.train.key
+        if key == base_key:
+            return base
+        if key in same:
+            return before.options[key]
+        own = operate(made, option, asked, near, before.rests(key))
+        return _option_year(made, option, asked, own, base, extra_running)
+
+    return tuple(run(option) for option in made.options), near
 
 
-def _baseline_year(asked: Demand, made: Design, extra_running: bool) -> tuple[OptionYear, Mask]:
+def _baseline_year(
+    asked: Demand, made: Design, extra_running: bool, earlier: tuple[Rest, ...]
+) -> tuple[OptionYear, Mask]:
     wanted = asked.available & (asked.heat_MW > 0) & (asked.heat_MW >= least_heat(made, _SURELY_OFF))
-    run = operate(made, made.baseline, asked, wanted)
+    run = operate(made, made.baseline, asked, wanted, earlier)
     near = np.zeros_like(wanted)
     near[run.hour] = run.solution.feed.live_steam_kg_s >= _NEAR_LEAST_FLOW * made.plant.min_kg_s
     return _option_year(made, made.baseline, asked, run, None, extra_running), near
@@ -203,10 +222,12 @@ def _option_year(
         full[hour] = values
         return full
 
-    runs = spread(at.valid & (at.feed.live_steam_kg_s >= made.plant.min_kg_s))
+    enough = at.feed.live_steam_kg_s >= made.plant.min_kg_s
+    runs, no_operation = spread(at.valid & enough), spread(~at.valid & enough)
     if base is None:
         on, borrowed, could_gain = runs, np.zeros(size, dtype=bool), np.zeros(size, dtype=bool)
     else:
+        no_operation = np.zeros(size, dtype=bool)
         borrowed = base.on & ~spread(at.valid)
         could_gain = runs & ~base.on
         # Nobody starts a boiler for the few hours that only the option could run.
@@ -244,8 +265,10 @@ def _option_year(
         as_baseline=borrowed,
         below_tail_minimum=borrowed & spread(few),
         could_gain=could_gain,
+        no_operation=no_operation,
         greatest=_greatest(made, run, own),
         years=asked.years,
+        rests=run.solution.rests,
     )
 
 

@@ -19,7 +19,8 @@ _FLOORS = """
     case.book_hours case.book_rows case.book case.load
     steam steam_fits
     cycle.condensers cycle.turbine cycle.plant cycle.feedwater cycle.stages cycle.shells cycle.energy
-    cycle.task cycle.sliding cycle.passes cycle.solve cycle.calibrate cycle.design cycle.limits cycle.balance
+    cycle.task cycle.rests cycle.sliding cycle.passes cycle.solve
+    cycle.calibrate cycle.design cycle.limits cycle.balance
     demand operate year sizing
     correlations published_costs item_money capex estimates
     prices timeline cash_flow measures emissions

@@ -12,7 +12,7 @@ from appraise.capex import capital
 from appraise.case.load import LoadedCase, case_from, load_case
 from appraise.case.paths import changed
 from appraise.chain import Physics, case_npv, run_scenario, solve_physics
-from appraise.draws import Risk, risk
+from appraise.draws import METHOD_LIMIT, Risk, risk
 from appraise.grid import break_even_grid
 from appraise.optimum import DIFFERENCES_K, design_choice
 
@@ -118,6 +118,32 @@ def test_the_response_is_measured_and_close(tmp_path: Path) -> None:
     assert found.method_error is not None
     assert found.method_error.checked == 12
     assert found.method_error.root_mean_square < 0.01
+
+
+def test_a_response_that_is_not_close_enough_is_made_finer(tmp_path: Path) -> None:
+    """A wide range of supply temperatures moves many hours from one regime to another."""
+    supply = {
+        "label": "Supply",
+        "path": "year.supply_offset_K",
+        "distribution": {"kind": "uniform", "low": -22.0, "high": 16.0},
+    }
+    loaded = loaded_with(tmp_path, [*ECONOMIC, TECHNICAL, supply])
+    found = drawn(loaded, 300, verify=24).method_error
+    assert found is not None
+    assert found.hours == loaded.hours.time.size  # the first, plain response uses every second hour
+    assert found.root_mean_square < 0.01
+
+
+def test_what_no_response_can_follow_is_measured_as_such(tmp_path: Path) -> None:
+    """Thousands of hours of this case reach the steam limit together: a corner in the middle of a driver."""
+    heat = {
+        "label": "Heat",
+        "path": "year.heat_multiplier",
+        "distribution": {"kind": "normal", "mean": 1.0, "standard_deviation": 0.08},
+    }
+    found = drawn(loaded_with(tmp_path, [*ECONOMIC, TECHNICAL, heat]), 300).method_error
+    assert found is not None
+    assert found.root_mean_square > METHOD_LIMIT
 
 
 def test_the_same_seed_gives_the_same_draws_bit_by_bit(tmp_path: Path) -> None:

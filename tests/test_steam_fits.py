@@ -2,9 +2,12 @@
 
 import numpy as np
 import pytest
+from plants import case_of, solved
+from scalar.marrowby import unlimited
 
 from appraise import steam
 from appraise import steam_fits as fits
+from appraise.cycle.design import design
 from appraise.errors import SolveError
 
 # What the fits were measured to do, with a factor of about two for another machine's rounding.
@@ -15,6 +18,9 @@ LIQUID_ENTHALPY_kJ_kg = 2e-9
 LIQUID_VOLUME_RELATIVE = 5e-12
 
 LOWEST_BAR, HIGHEST_BAR = 0.00612, 19.0
+# In the later ranges, of bleeds and their feed water, what the module states.
+STATED = 1e-9
+BLEED_BAR, BOILER_BAR, HOTTEST_C = 165.2, 200.0, 620.0
 
 
 def grid(x: np.ndarray, y: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
@@ -54,8 +60,22 @@ def test_saturation_pressure() -> None:
     assert np.abs(fits.saturation_pressure(t) / steam.saturation_pressure_t(t) - 1.0).max() < 1e-12
 
 
-@pytest.mark.parametrize("p_bar", [HIGHEST_BAR + 0.01, 25.0, 60.0, 150.0])
-def test_outside_the_fit_the_library_answers(p_bar: float) -> None:
+@pytest.mark.parametrize("field", ["temperature_C", "hf", "hg", "sf", "sg", "vf", "vg"])
+def test_saturation_state_at_bleeds(field: str) -> None:
+    p = np.geomspace(HIGHEST_BAR, BLEED_BAR, 2001)[1:-1]
+    names = {"temperature_C": "saturation_temperature_p"} | {
+        f"{what}{phase}": f"{word}_{kind}_p"
+        for phase, word in (("f", "liquid"), ("g", "vapour"))
+        for what, kind in (("h", "enthalpy"), ("s", "entropy"), ("v", "volume"))
+    }
+    exact = getattr(steam, names[field])(p)
+    assert np.abs(getattr(fits.saturation(p), field) / exact - 1.0).max() < STATED
+    t = steam.saturation_temperature_p(p)
+    assert np.abs(fits.saturation_pressure(t) / p - 1.0).max() < STATED
+
+
+@pytest.mark.parametrize("p_bar", [0.006115, 165.25, 170.0, 200.0])
+def test_outside_the_fits_the_library_answers(p_bar: float) -> None:
     p = np.array([p_bar])
     state = fits.saturation(p)
     assert state.temperature_C == steam.saturation_temperature_p(p)
@@ -64,9 +84,14 @@ def test_outside_the_fit_the_library_answers(p_bar: float) -> None:
     assert fits.saturation_pressure(state.temperature_C) == pytest.approx(p, rel=1e-11)
 
 
-def test_a_set_that_leaves_the_fit_gives_every_element_right() -> None:
-    p = np.array([0.5, 25.0])
-    assert fits.saturation(p).hg == pytest.approx(steam.vapour_enthalpy_p(p), rel=1e-12)
+def test_a_set_that_leaves_the_fits_gives_every_element_right() -> None:
+    """Of both ranges, of the edge between them, and above both, in one call."""
+    p = np.array([0.5, 25.0, HIGHEST_BAR, np.nextafter(HIGHEST_BAR, 20.0), 180.0, 2.0])
+    state = fits.saturation(p)
+    assert state.temperature_C == pytest.approx(steam.saturation_temperature_p(p), rel=1e-11)
+    assert state.hg == pytest.approx(steam.vapour_enthalpy_p(p), rel=1e-11)
+    assert state.vf == pytest.approx(steam.liquid_volume_p(p), rel=1e-11)
+    assert fits.saturation_pressure(state.temperature_C) == pytest.approx(p, rel=1e-10)
 
 
 # --- superheated and wet steam ----------------------------------------------------------------------------
@@ -100,15 +125,32 @@ def test_enthalpy_of_superheated_steam(superheated) -> None:
     assert np.abs(fits.enthalpy_ps(at, s) - exact).max() < ENTHALPY_kJ_kg
 
 
-def test_superheat_outside_the_fit_is_the_librarys() -> None:
-    """One element hotter than the fit, one above its pressures, one inside: all in one call."""
-    at = fits.saturation(np.array([0.5, 12.0, 2.0]))
-    t = np.array([600.0, 300.0, 200.0])
+def test_superheat_outside_the_fits_is_the_librarys() -> None:
+    """Hotter than the fit, of other ranges, above and below their pressures, inside: all in one call."""
+    at = fits.saturation(np.array([0.5, 12.0, 2.0, 80.0, 170.0, 0.008]))
+    t = np.array([600.0, 300.0, 200.0, 350.0, 400.0, 50.0])
     h, s, v = (f(at.pressure_bar, t) for f in (steam.enthalpy_pt, steam.entropy_pt, steam.volume_pt))
     assert (h - at.hg)[0] > 700.0
     assert fits.entropy_ph(at, h) == pytest.approx(s, rel=1e-11)
     assert fits.volume_ph(at, h) == pytest.approx(v, rel=1e-10)
     assert fits.enthalpy_ps(at, s) == pytest.approx(h, rel=1e-11)
+
+
+@pytest.fixture(scope="module")
+def bleeds() -> tuple[fits.Saturation, np.ndarray]:
+    """Pressure and temperature of bleeds above the first range, dense near the dome, up to the hottest."""
+    p, share = grid(np.geomspace(9.0, BLEED_BAR, 101)[1:-1], np.linspace(0.0, 1.0, 61) ** 2)
+    at = fits.saturation(p)
+    return at, at.temperature_C + 1e-6 + share * (HOTTEST_C - at.temperature_C - 1e-6)
+
+
+def test_superheated_bleeds(bleeds, monkeypatch: pytest.MonkeyPatch) -> None:
+    at, t = bleeds
+    h, s, v = (f(at.pressure_bar, t) for f in (steam.enthalpy_pt, steam.entropy_pt, steam.volume_pt))
+    monkeypatch.setattr(fits, "superheated_temperature", None)  # every point by a fit, none by the library
+    assert np.abs(fits.enthalpy_ps(at, s) / h - 1.0).max() < STATED
+    assert np.abs(fits.entropy_ph(at, h) / s - 1.0).max() < STATED
+    assert np.abs(fits.volume_ph(at, h) / v - 1.0).max() < STATED
 
 
 @pytest.mark.parametrize("quality", [0.0, 0.1, 0.5, 0.9, 1.0])
@@ -122,10 +164,12 @@ def test_wet_steam_follows_the_lever_rule(pressures, quality: float) -> None:
 
 @pytest.mark.parametrize("function", [fits.enthalpy_ps, fits.entropy_ph, fits.volume_ph])
 def test_no_step_where_the_last_drop_evaporates(pressures, function) -> None:
-    at = fits.saturation(pressures[pressures < 9.0])
-    edge = at.sg if function is fits.enthalpy_ps else at.hg
-    wet, dry = function(at, edge * (1.0 - 1e-12)), function(at, edge * (1.0 + 1e-12))
-    assert dry == pytest.approx(wet, rel=1e-10)
+    bleeds = np.geomspace(9.0, BLEED_BAR, 500)[1:-1]
+    for p, limit in ((pressures[pressures < 9.0], 1e-10), (bleeds, STATED)):
+        at = fits.saturation(p)
+        edge = at.sg if function is fits.enthalpy_ps else at.hg
+        wet, dry = function(at, edge * (1.0 - 1e-12)), function(at, edge * (1.0 + 1e-12))
+        assert dry == pytest.approx(wet, rel=limit)
 
 
 # --- liquid -----------------------------------------------------------------------------------------------
@@ -143,8 +187,17 @@ def test_liquid(liquid) -> None:
     assert np.abs(fits.liquid_volume(*liquid) / v - 1.0).max() < LIQUID_VOLUME_RELATIVE
 
 
-def test_liquid_outside_the_fit_is_the_librarys() -> None:
-    p, t = np.array([75.0, 1.0, 40.0]), np.array([130.0, 1.0, 230.0])
+def test_liquid_of_the_boiler() -> None:
+    """Feed water at boiler pressure, cold or from a heater on any bleed."""
+    p, t = grid(np.linspace(31.0, BOILER_BAR, 61), np.linspace(2.0, 349.0, 151))
+    liquid = p > steam.saturation_pressure_t(t)
+    p, t = p[liquid], t[liquid]
+    assert np.abs(fits.liquid_enthalpy(p, t) / steam.enthalpy_pt(p, t) - 1.0).max() < STATED
+    assert np.abs(fits.liquid_volume(p, t) / steam.volume_pt(p, t) - 1.0).max() < STATED
+
+
+def test_liquid_outside_the_fits_is_the_librarys() -> None:
+    p, t = np.array([75.0, 1.0, 40.0, 230.0, 190.0]), np.array([130.0, 1.0, 230.0, 60.0, 349.8])
     assert fits.liquid_enthalpy(p, t) == pytest.approx(steam.enthalpy_pt(p, t), rel=1e-12)
     assert fits.liquid_volume(p, t) == pytest.approx(steam.volume_pt(p, t), rel=1e-12)
 
@@ -210,3 +263,21 @@ def test_any_shape(shape: tuple[int, ...]) -> None:
     assert fits.volume_ph(at, np.full(shape, 2500.0)).shape == shape
     assert fits.liquid_enthalpy(np.full(shape, 5.0), np.full(shape, 60.0)).shape == shape
     assert fits.NetworkWater.at(10.0).enthalpy(np.full(shape, 60.0)).shape == shape
+
+
+def test_a_year_with_bleeds_at_high_pressure_asks_the_library_for_nothing(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    """A call of the library costs ten times as much as a fit."""
+    data = unlimited({"plant.feed.heater": {"bleed_bar": 30.0, "terminal_difference_K": 4.0}})
+    data["plant"]["feed"] |= {"deaerator_bar": 10.0, "bleed_bar": 14.0}
+    made = design(case_of(data))
+    hours = [(heat, 76.0 + 0.6 * heat, 46.0) for heat in np.linspace(8.0, 44.0, 60)]
+    solved(made, made.options[1], hours)  # the fits are made by the first that needs them
+    asked: list[str] = []
+    monkeypatch.setattr(steam, "PropsSI", lambda *inputs: asked.append(inputs[0]))
+    at = solved(made, made.options[1], hours)
+    assert (at.feed.heater_bar > 9.0).any()
+    assert (at.feed.heater_bar > 19.0).any()
+    assert (at.feed.bleed_bar > 9.0).any()
+    assert asked == []

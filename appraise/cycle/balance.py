@@ -7,12 +7,19 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from appraise.case.load import Case
-from appraise.cycle.design import Design, OptionDesign, ideal_power_gross_MW, unlimited_gross_MW
+from appraise.case.plant import Option
+from appraise.cycle.design import (
+    Design,
+    OptionDesign,
+    ideal_power_gross_MW,
+    unlimited_gross_MW,
+    why_not,
+)
 from appraise.cycle.energy import Energy
 from appraise.cycle.solve import solve
 from appraise.cycle.task import Conditions, Solution, Task
 from appraise.cycle.turbine import exhaust_state
-from appraise.errors import SolveError
+from appraise.errors import CaseError, SolveError
 from appraise.numerics import Array
 from appraise.steam import entropy_pt, liquid_entropy_p, superheated_temperature_ph
 from appraise.steam_fits import entropy_ph, liquid_enthalpy, saturation, volume_ph
@@ -95,15 +102,25 @@ def design_balances(case: Case, made: Design) -> tuple[Balance, ...]:
     """Heat balance of every option at the design point, with its share of the ideal gain."""
     points = [_Point(o, o.solution) for o in made.options]
     base = next(p for p in points if p.option.train.key == made.baseline.train.key)
-    gross = unlimited_gross_MW(base.option)
-    shares = []
-    for option, point in zip(case.options, points, strict=True):
-        if point is base:
-            shares.append(0.0)
-            continue
-        ideal = ideal_power_gross_MW(case, option, made) - gross
-        shares.append((unlimited_gross_MW(point.option) - gross) / ideal)
+    shares = [
+        0.0 if point is base else _ideal_share(case, option, made, point.option)
+        for option, point in zip(case.options, points, strict=True)
+    ]
     return tuple(_balance(case, made, p, base, s) for p, s in zip(points, shares, strict=True))
+
+
+def _ideal_share(case: Case, option: Option, made: Design, sized: OptionDesign) -> float | None:
+    """Extra gross power over that of the ideal.
+
+    None where the ideal, with the stated terminal difference in its hottest stage too, cannot be built or
+    makes no more power than the baseline: a share of that says nothing.
+    """
+    gross = unlimited_gross_MW(made.baseline)
+    try:
+        ideal = ideal_power_gross_MW(case, option, made) - gross
+    except CaseError:
+        return None
+    return (unlimited_gross_MW(sized) - gross) / ideal if ideal > 0.0 else None
 
 
 def point_balances(
@@ -114,7 +131,8 @@ def point_balances(
     points = [_Point(o, option_at(made, o, at)) for o in made.options]
     base = next(p for p in points if p.option.train.key == made.baseline.train.key)
     if not base.solution.valid[0]:
-        raise SolveError("the baseline has no steady operation at this point")
+        why = why_not(made.plant, base.solution)
+        raise SolveError(f"the baseline has no operation at this point: {why}")
     chosen = [p if p.solution.valid[0] else replace(base, option=p.option) for p in points]
     return tuple(
         replace(_balance(case, made, p, base, None), runs_as_baseline=q is not p)

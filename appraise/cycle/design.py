@@ -11,7 +11,7 @@ from appraise.case.plant import Option
 from appraise.cycle.calibrate import Calibration, calibrate
 from appraise.cycle.condensers import log_mean_difference, transfer_units
 from appraise.cycle.energy import Energy
-from appraise.cycle.feedwater import BleedLaw
+from appraise.cycle.feedwater import BleedLaw, not_below_live_steam
 from appraise.cycle.plant import PlantData, plant_data
 from appraise.cycle.shells import Shells, Sizes
 from appraise.cycle.solve import solve
@@ -73,13 +73,14 @@ def design(case: Case) -> Design:
     Raises CaseError, naming the option, where one cannot be built.
     """
     conditions, train = design_conditions(case), train_of(case, case.baseline)
+    live_bar = case.plant.live_steam.pressure_bar
 
     def baseline_of(trial: PlantData) -> tuple[Reference, Task]:
-        reference, existing = _rated_baseline(trial, train, conditions)
+        reference, existing = _rated_baseline(trial, train, conditions, live_bar)
         return reference, _rated_task(trial, train, reference, conditions, existing)
 
     plant, calibration = calibrate(case, plant_data(case), baseline_of)
-    reference, existing = _rated_baseline(plant, train, conditions)
+    reference, existing = _rated_baseline(plant, train, conditions, live_bar)
     options = tuple(
         size_option(plant, train_of(case, option), reference, conditions, existing) for option in case.options
     )
@@ -87,7 +88,9 @@ def design(case: Case) -> Design:
     return Design(plant, calibration, reference, conditions, existing, baseline, options)
 
 
-def _rated_baseline(plant: PlantData, train: Train, conditions: Conditions) -> tuple[Reference, float]:
+def _rated_baseline(
+    plant: PlantData, train: Train, conditions: Conditions, live_bar: float
+) -> tuple[Reference, float]:
     """The baseline at its own design point: reference values, and UA of its condenser in kW/K."""
     stated = replace(train.stages[0], terminal_difference_K=plant.existing_difference_K)
     start = solve(_design_task(plant, replace(train, stages=(stated,)), None, conditions, (None,)))
@@ -100,17 +103,16 @@ def _rated_baseline(plant: PlantData, train: Train, conditions: Conditions) -> t
             exhaust_bar=float(start.shells.flange_bar[-1, 0]),
         ),
     )
-    if plant.bleed_bar <= reference.bleed.exhaust_bar:
-        raise CaseError(
-            [
-                Problem(
-                    "plant.feed.bleed_bar",
-                    f"{plant.bleed_bar:g} bar; must lie above the baseline's exhaust, "
-                    f"{reference.bleed.exhaust_bar:.3f} bar at the design point",
-                )
-            ]
-        )
+    _check_exhaust(reference.bleed.exhaust_bar, plant.bleed_bar, live_bar)
     return reference, _conductance(stated, start, 0)
+
+
+def _check_exhaust(exhaust_bar: float, bleed_bar: float, live_bar: float) -> None:
+    """Live steam and the bleed must lie above the exhaust. Raises CaseError."""
+    for where, bar in (("plant.live_steam.pressure_bar", live_bar), ("plant.feed.bleed_bar", bleed_bar)):
+        if bar <= exhaust_bar:
+            allowed = f"must lie above the baseline's exhaust, {exhaust_bar:.3f} bar at the design point"
+            raise CaseError([Problem(where, f"{bar:g} bar; {allowed}")])
 
 
 def _rated_task(
@@ -130,7 +132,8 @@ def size_option(
     task = _rated_task(plant, train, reference, conditions, existing_kW_K)
     solution, rated = solve(task), task.sizes.conductance_kW_K
     if not solution.valid[0]:
-        raise CaseError([Problem(f"options.{train.key}", _why_not(solution))])
+        why = f"cannot be built: {why_not(plant, solution)}"
+        raise CaseError([Problem(f"options.{train.key}", why)])
     conductance = tuple(
         _conductance(stage, solution, i) if known is None else known
         for i, (stage, known) in enumerate(zip(train.stages, rated, strict=True))
@@ -202,17 +205,27 @@ def _no_drop(train: Train, shells: Shells, i: int) -> str:
     )
 
 
-def _why_not(solution: Solution) -> str:
-    """Why an option cannot be built at the design point."""
+def why_not(plant: PlantData, solution: Solution) -> str:
+    """Why a single point, without a tail whose size is known, has no operation."""
     steam, pressure = solution.shells.steam_kg_s[:, 0], solution.shells.shell_bar[:, 0]
     if (np.diff(pressure) <= 0).any():
         stage = int(np.flatnonzero(np.diff(pressure) <= 0)[0]) + 1
         return (
-            f"cannot be built: the shell of stage {stage} needs {pressure[stage - 1]:.3f} bar, which is "
-            f"not below the {pressure[stage]:.3f} bar of the next hotter one"
+            f"the shell of stage {stage} needs {pressure[stage - 1]:.3f} bar, which is not below the "
+            f"{pressure[stage]:.3f} bar of the next hotter one"
         )
-    stage = int(np.flatnonzero(steam <= 0)[0]) + 1
-    return f"cannot be built: stage {stage} would need no steam, the drains from above heat it alone"
+    if (steam <= 0).any():
+        stage = int(np.flatnonzero(steam <= 0)[0]) + 1
+        return f"stage {stage} would need no steam, the drains from above heat it alone"
+    feed, shells = solution.feed, solution.shells
+    above = not_below_live_steam(plant, shells.steam_kJ_kg[-1], feed, solution.on_live_steam)[:, 0]
+    places = (
+        ("its hottest exhaust", shells.flange_bar[-1]),
+        ("the bleed to the deaerator", feed.bleed_bar),
+        ("the bleed to the feed heater", feed.heater_bar),
+    )
+    name, bar = places[int(np.flatnonzero(above)[0])]
+    return f"{name} would stand at {bar[0]:.3f} bar, which is not below the live steam"
 
 
 def ideal_power_gross_MW(case: Case, option: Option, made: Design) -> float:

@@ -10,7 +10,9 @@ from numpy.typing import NDArray
 from appraise.cycle.plant import PlantData
 from appraise.cycle.turbine import bleed_pressure, main_line_enthalpy
 from appraise.numerics import Array
-from appraise.steam_fits import liquid_enthalpy, saturation
+from appraise.steam_fits import Saturation, liquid_enthalpy, saturation
+
+_MOST_OF_BOILER = 1.05  # greatest bleed pressure over the boiler's that the equations are asked for
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -67,11 +69,20 @@ def pump_rise(volume_m3_kg: Array, rise_bar: Array, efficiency: float) -> Array:
 
 
 def deaerator_pressure(plant: PlantData, bleed_bar: Array) -> Array:
-    """Pressure in the deaerator: held, or sliding 5 % below its bleed down to a minimum. bar."""
+    """Pressure in the deaerator, bar: held [1], or sliding 5 % below its bleed down to a minimum [point]."""
     if not plant.deaerator_slides:
-        return np.full(bleed_bar.shape, plant.deaerator_bar)
+        return np.array([plant.deaerator_bar])
     sliding = np.minimum(plant.deaerator_bar, 0.95 * bleed_bar)
     return np.asarray(np.maximum(sliding, plant.deaerator_minimum_bar))
+
+
+def _bleed_state(plant: PlantData, bleed_bar: Array) -> Saturation:
+    """Saturation state at a bleed.
+
+    On its way the iteration may ask for pressures that no steam table has. A bleed this far above the boiler
+    is no operation (`not_below_live_steam`), whatever its pressure.
+    """
+    return saturation(np.minimum(bleed_bar, _MOST_OF_BOILER * plant.boiler_bar))
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -86,8 +97,10 @@ class _Heater:
     @classmethod
     def at(cls, plant: PlantData, bleed_bar: Array, efficiency: Array) -> _Heater:
         assert plant.heater is not None
-        state = saturation(bleed_bar)
-        outlet_C = state.temperature_C - plant.heater.terminal_difference_K
+        state = _bleed_state(plant, bleed_bar)
+        # Feed water that a heater with desuperheater would bring to the boil leaves as saturated liquid.
+        boiling_C = saturation(np.asarray(plant.boiler_bar)).temperature_C
+        outlet_C = np.minimum(state.temperature_C - plant.heater.terminal_difference_K, boiling_C)
         feed = liquid_enthalpy(np.full(bleed_bar.shape, plant.boiler_bar), outlet_C)
         return cls(bleed_bar, main_line_enthalpy(plant.h1, plant.s1, efficiency, state), state.hf, feed)
 
@@ -105,16 +118,21 @@ def feed_water(
     """Mass and energy balance of deaerator, feed pump and heater, in closed form.
 
     Feed flow is (1 + b) m1, b the blowdown share made up with cold water. Where `on_live_steam`, throttled
-    live steam heats the deaerator instead of the bleed. The heater's share of live steam is
+    live steam heats the deaerator instead of the bleed. deaerator_bar : [point], or [1] where it is held.
+    The heater's share of live steam is
     g = (1 + b)(h_feed - h_pumped)/(h_heater - h_drain), 0 where it would cool the feed; its drain goes to the
     deaerator. Where the water there is hotter than the deaerator needs, the bleed is 0 and the deaerator's
     outlet floats on the energy balance.
     """
-    bleed = main_line_enthalpy(plant.h1, plant.s1, efficiency, saturation(bleeds.deaerator_bar))
+    bleed = main_line_enthalpy(plant.h1, plant.s1, efficiency, _bleed_state(plant, bleeds.deaerator_bar))
     steam = np.where(on_live_steam, plant.h1, bleed)
     at_da = saturation(deaerator_bar)
     h_mu = liquid_enthalpy(deaerator_bar, np.asarray(plant.makeup_C))
     h_c, b, zero = condensate_kJ_kg, plant.blowdown_share, np.zeros(condensate_kg_s.shape)
+
+    def at_points(values: Array) -> Array:
+        return np.broadcast_to(values, zero.shape)
+
     rise = pump_rise(at_da.vf, plant.boiler_bar - deaerator_bar, plant.pump_efficiency)
     heater = None if bleeds.heater_bar is None else _Heater.at(plant, bleeds.heater_bar, efficiency)
 
@@ -143,12 +161,27 @@ def feed_water(
         heater_kg_s=g * m1,
         heater_bar=zero if heater is None else heater.bar,
         heater_kJ_kg=zero if heater is None else heater.steam,
-        deaerator_bar=deaerator_bar,
-        deaerator_kJ_kg=h_da,
-        pumped_kJ_kg=pumped,
-        feed_kJ_kg=feed,
-        makeup_kJ_kg=h_mu,
+        deaerator_bar=at_points(deaerator_bar),
+        deaerator_kJ_kg=at_points(h_da),
+        pumped_kJ_kg=at_points(pumped),
+        feed_kJ_kg=at_points(feed),
+        makeup_kJ_kg=at_points(h_mu),
     )
+
+
+def not_below_live_steam(
+    plant: PlantData, exhaust_kJ_kg: Array, feed: FeedWater, on_live_steam: NDArray[np.bool_]
+) -> NDArray[np.bool_]:
+    """Where hot exhaust, deaerator bleed and heater bleed lie at live-steam pressure or above [3, point].
+
+    All three stand on the main section's line, on which enthalpy falls just as pressure does; throttled live
+    steam does not. No turbine works against its own supply, so such a point is no operation: an option runs
+    as the baseline, and where the baseline itself has none the plant stands still and peak boilers make the
+    heat, as below its least flow. Hours whose supply temperature alone forbids it are mistakes in the series
+    and refused before anything is solved (`limits`).
+    """
+    bleed = np.where(on_live_steam, 0.0, feed.bleed_kJ_kg)
+    return np.asarray(np.stack([exhaust_kJ_kg, bleed, feed.heater_kJ_kg]) >= plant.h1)
 
 
 def _floating_enthalpy(

@@ -16,6 +16,7 @@ from appraise.numerics import Array
 from appraise.steam_fits import liquid_volume
 
 _HEAT_BOUNDS = (0.02, 20.0)  # of the factor on the heat asked for
+_OPENING_BOUNDS = (1e-3, 5.0)  # of the pressure behind a valve over that before it
 _FLUE_GAS_BOUNDS = (0.0, 0.8)  # of its share of the plant's heat
 
 
@@ -94,7 +95,7 @@ def evaluate(task: Task, layout: Layout, state: Array) -> Pass:
         zone_C[stage] += np.clip(row, 0.0, 0.9) * rise[stage]
     efficiency = plant.efficiency_at(state[layout.load])
     throttle = Throttle(
-        opening=np.maximum(state[layout.openings], 1e-3) if task.held else None,
+        opening=np.clip(state[layout.openings], *_OPENING_BOUNDS) if task.held else None,
         flow_share=state[layout.flows] if task.train.tail.varies and task.sections else None,
     )
     shells = solve_shells(
@@ -139,7 +140,9 @@ def _condensate(task: Task, shells: Shells, deaerator_bar: Array) -> tuple[Array
     total = shells.steam_kg_s.sum(axis=0)
     drawn = shells.steam_kg_s if task.train.pumped else total[None]
     last = slice(None) if task.train.pumped else slice(0, 1)
-    volume = liquid_volume(shells.shell_bar[last], shells.drain_C[last])
+    volume = shells.saturated_drain_m3_kg[last].copy()
+    for stage in task.cooled if task.train.pumped else ():
+        volume[stage] = liquid_volume(shells.shell_bar[stage], shells.drain_C[stage])
     rise = pump_rise(volume, deaerator_bar - shells.shell_bar[last], plant.pump_efficiency)
     mixed = (drawn * (shells.drain_kJ_kg[last] + rise)).sum(axis=0) / total
     work = np.zeros(shells.steam_kg_s.shape)

@@ -17,6 +17,8 @@ from appraise.cycle.turbine import exhaust_state, main_line_enthalpy, moisture, 
 from appraise.numerics import Array
 from appraise.steam_fits import Saturation, liquid_enthalpy, saturation, saturation_at, saturation_pressure
 
+_HOTTEST_SHELL_C = 350.0  # saturation at 165.3 bar
+
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Sizes:
@@ -46,10 +48,10 @@ class Shells:
     steam_kJ_kg: Array
     moisture: Array  # at the flange
     saturated_drain_kJ_kg: Array
+    saturated_drain_m3_kg: Array
     drain_kJ_kg: Array
     drain_C: Array
     steam_kg_s: Array
-    steam_volume_kg: Array  # vapour volume at the flange, m3/kg of dry saturated steam
     passing: Array  # what each section passes per unit of its constant [stage - 1, point]
     log_slope: Array  # d ln p/dT of saturation [stage, point], 1/K
 
@@ -62,7 +64,8 @@ def _stage_saturation(
         assert stage.terminal_difference_K is not None
         return np.asarray(out_C + stage.terminal_difference_K)
     ua = part_flow_conductance(conductance, flow / sizes.network_kg_s, stage.flow_exponent)
-    return saturation_from_rating(zone_C, out_C, ua, flow, c)
+    # A surface far too small asks for any temperature; from here on it is above every live steam.
+    return np.minimum(saturation_from_rating(zone_C, out_C, ua, flow, c), _HOTTEST_SHELL_C)
 
 
 def _drain(stage: Stage, shell: Saturation, water_in_C: Array) -> tuple[Array, Array]:
@@ -86,12 +89,17 @@ class Throttle:
     flow_share: Array | None
 
 
-def _section_inlet(train: Train, above: Saturation, throttle: Throttle, i: int) -> Saturation:
-    """State of saturation before the blading of section i, behind inlet loss and valve."""
+def _section_inlet(
+    train: Train, above: Saturation, throttle: Throttle, i: int, outlet_bar: Array
+) -> Saturation:
+    """State of saturation before the blading of section i, behind inlet loss and valve.
+
+    No valve throttles below what stands behind the section, whatever the iteration asks of it.
+    """
     kept = 1.0 - train.tail.inlet_loss_share
     if throttle.opening is None:
         return above if kept == 1.0 else saturation(above.pressure_bar * kept)
-    return saturation(above.pressure_bar * (kept * throttle.opening[i]))
+    return saturation(np.maximum(above.pressure_bar * (kept * throttle.opening[i]), outlet_bar))
 
 
 def _section_efficiency(train: Train, throttle: Throttle, i: int) -> Array | float:
@@ -134,7 +142,7 @@ def solve_shells(
         if above is None:
             h = main_line_enthalpy(plant.h1, plant.s1, efficiency, flange)
         else:
-            inlet = _section_inlet(train, above, throttle, i)
+            inlet = _section_inlet(train, above, throttle, i, flange.pressure_bar)
             passing[i] = swallowing(inlet, above_h, flange.pressure_bar)
             dry = _section_efficiency(train, throttle, i)
             h = tail_enthalpy(inlet, above_h, flange, dry, train.tail.baumann_factor)
@@ -157,10 +165,10 @@ def solve_shells(
             h,
             moisture(flange, h),
             shell.hf,
+            shell.vf,
             drain_h,
             drain_C,
             steam,
-            flange.vg,
             (shell.hg - shell.hf) / ((t_sat + 273.15) * shell.pressure_bar * 100.0 * shell.vg),
         )
         for name, value in zip(_ROWS, values, strict=True):
@@ -178,9 +186,9 @@ _ROWS = (
     "steam_kJ_kg",
     "moisture",
     "saturated_drain_kJ_kg",
+    "saturated_drain_m3_kg",
     "drain_kJ_kg",
     "drain_C",
     "steam_kg_s",
-    "steam_volume_kg",
     "log_slope",
 )

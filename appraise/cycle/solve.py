@@ -5,14 +5,15 @@ from __future__ import annotations
 from dataclasses import replace
 
 import numpy as np
-from numpy.typing import NDArray
 
 from appraise.cycle.energy import Energy
+from appraise.cycle.feedwater import not_below_live_steam
 from appraise.cycle.passes import Pass, design_shares, energy_of, evaluate, heat_factor
+from appraise.cycle.rests import begin, rest_of
 from appraise.cycle.sliding import fractions_of, improved_fractions, shares_reached
-from appraise.cycle.task import Layout, Mask, Solution, Task, overlaid
+from appraise.cycle.task import Layout, Mask, Rest, Solution, Task, overlaid
 from appraise.errors import SolveError
-from appraise.numerics import Array, fixed_point
+from appraise.numerics import Array, FixedPoint, fixed_point
 
 _LEAST_SHARE, _GREATEST_SHARE = 0.01, 0.99  # of the rise, for every temperature between two stages
 _CAREFUL = ((0.5, 0.05), (0.15, 0.02))  # damping and longest step of the second and third try
@@ -94,22 +95,34 @@ def _flue_gas_share(task: Task, now: Pass, result: Energy) -> Array:
     return np.asarray(result.fuel_MW * gas.heat_per_fuel_at(task.conditions.return_C) / now.water.heat_MW)
 
 
-def _solve_state(task: Task) -> tuple[Array, Mask]:
-    """Iterate one task to rest: the state [unknown, point] and where it lies within its bounds."""
+def _solve_state(task: Task) -> tuple[Array, Mask, Rest]:
+    """Iterate one task to rest: the state [unknown, point], where it lies within its bounds, and the rest."""
     layout = Layout.of(task)
-    result = fixed_point(
-        lambda x, index: _step(task.take(index), layout, x), _start(task, layout), tolerance=1e-11
-    )
-    state, converged = result.x, result.converged
+    begun = begin(task, _start(task, layout))
+    found = _iterated(task, layout, begun.state, begun.inverse)
+    astray = np.flatnonzero(begun.near & ~(found.converged & _within(layout, found.x)))
+    if astray.size:
+        part = task.take(astray)
+        found = overlaid(found, _iterated(part, layout, _start(part, layout), None), astray)
+    state, converged = found.x, found.converged
     for damping, longest in _CAREFUL:
         if converged.all():
             break
         state, converged = _careful(task, layout, state, converged, damping, longest)
     if not converged.all() and not task.sections:
         _refuse(task, converged)
+    inside = _within(layout, state) & converged
+    return state, inside, rest_of(task, state, found.inverse, inside & found.converged)
+
+
+def _iterated(task: Task, layout: Layout, start: Array, inverse: Array | None) -> FixedPoint:
+    return fixed_point(lambda x, index: _step(task.take(index), layout, x), start, inverse=inverse)
+
+
+def _within(layout: Layout, state: Array) -> Mask:
+    """Whether every temperature between two stages lies where a tail section can hold it."""
     shares = shares_reached(state[layout.shares])
-    within = (shares >= _LEAST_SHARE) & (shares <= _GREATEST_SHARE)
-    return state, np.asarray(within.all(axis=0)) & converged
+    return np.asarray(((shares >= _LEAST_SHARE) & (shares <= _GREATEST_SHARE)).all(axis=0))
 
 
 def _refuse(task: Task, converged: Mask) -> None:
@@ -160,15 +173,21 @@ def _on_bleed_or_live_steam(task: Task) -> Solution:
     if not low.any():
         return solution
     index = np.flatnonzero(low)
-    again = replace(task.take(index), on_live_steam=np.ones(index.size, dtype=bool))
+    again = replace(
+        task.take(index),
+        on_live_steam=np.ones(index.size, dtype=bool),
+        earlier=(*task.earlier, *solution.rests),
+    )
     return overlaid(solution, _solution(again, *_solve_state(again)), index)
 
 
-def _solution(task: Task, state: Array, inside: NDArray[np.bool_]) -> Solution:
+def _solution(task: Task, state: Array, inside: Mask, rest: Rest) -> Solution:
     now = evaluate(task, Layout.of(task), state)
     shells, number = now.shells, task.train.number - 1
     flow = np.ones((number, inside.size))
     valid = inside & (shells.steam_kg_s > 0).all(axis=0) & (np.diff(shells.shell_bar, axis=0) > 0).all(axis=0)
+    high = not_below_live_steam(task.plant, shells.steam_kJ_kg[-1], now.feed, task.on_live_steam)
+    valid &= ~high.any(axis=0)
     if task.sections:
         flow = _section_share(task, now)
         valid &= (flow >= task.train.tail.min_flow_share).all(axis=0)
@@ -188,4 +207,5 @@ def _solution(task: Task, state: Array, inside: NDArray[np.bool_]) -> Solution:
         energy=energy_of(task, now),
         on_live_steam=task.on_live_steam,
         valid=valid,
+        rests=(rest,),
     )

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, fields, is_dataclass, replace
-from typing import Any, TypeVar
+from typing import Any, NamedTuple, TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -50,6 +50,28 @@ class Conditions:
         )
 
 
+class Regime(NamedTuple):
+    """Which equations an iteration solves, and for how many unknowns."""
+
+    held: bool
+    limited: bool
+    on_live_steam: bool
+    unknowns: int
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Rest:
+    """Where the iteration of some points came to rest, for a later one to start from.
+
+    number : of each point, whatever the caller counts, such as hours; rising.
+    """
+
+    regime: Regime
+    number: NDArray[np.intp]
+    state: Array  # [unknown, point]
+    inverse: Array  # [unknown, unknown, point]
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class Task:
     """One option at many points, with what the solve may vary.
@@ -58,6 +80,7 @@ class Task:
         condensers) is just reached, starting from the heat of the conditions.
     held : the temperatures between the stages are held by valves; else they slide.
     reference : None for the baseline at its own design point, where load is 1 and the bleeds as stated.
+    number : of each point, by which rests know it. earlier : where similar points came to rest before.
     """
 
     plant: PlantData
@@ -68,10 +91,18 @@ class Task:
     on_live_steam: Mask
     limited: bool = False
     held: bool = False
+    number: NDArray[np.intp] | None = None
+    earlier: tuple[Rest, ...] = ()
 
     def take(self, index: NDArray[np.intp]) -> Task:
         """The chosen points."""
-        return replace(self, conditions=self.conditions.take(index), on_live_steam=self.on_live_steam[index])
+        number = None if self.number is None else self.number[index]
+        return replace(
+            self,
+            conditions=self.conditions.take(index),
+            on_live_steam=self.on_live_steam[index],
+            number=number,
+        )
 
     @property
     def sections(self) -> int:
@@ -144,13 +175,14 @@ class Solution:
     energy: Energy
     on_live_steam: Mask
     valid: Mask
+    rests: tuple[Rest, ...] = ()
 
 
 Result = TypeVar("Result")
 
 
 def overlaid(whole: Result, part: Result, index: NDArray[np.intp]) -> Result:
-    """A record of arrays [.., point] with the points `index` taken from `part`."""
+    """A record of arrays [.., point] with the points `index` taken from `part`; tuples of both are joined."""
     changes: dict[str, Any] = {}
     for field in fields(whole):  # type: ignore[arg-type]
         mine, theirs = getattr(whole, field.name), getattr(part, field.name)
@@ -160,4 +192,6 @@ def overlaid(whole: Result, part: Result, index: NDArray[np.intp]) -> Result:
             changes[field.name] = merged
         elif is_dataclass(mine):
             changes[field.name] = overlaid(mine, theirs, index)
+        elif isinstance(mine, tuple):
+            changes[field.name] = (*mine, *theirs)
     return replace(whole, **changes)  # type: ignore[type-var]

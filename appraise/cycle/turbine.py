@@ -11,6 +11,8 @@ from appraise.steam import (
 )
 from appraise.steam_fits import Saturation, enthalpy_ps, entropy_ph, saturation, volume_ph
 
+_HIGHEST_FLANGE_BAR = 210.0
+
 
 def live_steam(pressure_bar: float, temperature_C: float) -> tuple[float, float]:
     """Enthalpy, kJ/kg, and entropy, kJ/(kg K), at the stop valve."""
@@ -64,5 +66,8 @@ def swallowing(inlet: Saturation, h_in: Array, outlet_bar: Array) -> Array:
 
 
 def exhaust_state(shell_bar: Array, exhaust_loss_share: float) -> Saturation:
-    """Saturation state at the flange above a shell."""
-    return saturation(flange_pressure(shell_bar, exhaust_loss_share))
+    """Saturation state at the flange above a shell.
+
+    The iteration may pass by pressures that no steam table has; from here on they are above every live steam.
+    """
+    return saturation(np.minimum(flange_pressure(shell_bar, exhaust_loss_share), _HIGHEST_FLANGE_BAR))

@@ -8,7 +8,7 @@ from . import steam
 from .expansion import MainLine, main_line
 from .feed import Feed, Reference, cone_bar, feed
 from .plain import Option, Plant
-from .shells import Memory, NoSolution, Train
+from .shells import AgainstPressure, Memory, NoSolution, Train
 
 
 @dataclass(frozen=True)
@@ -72,6 +72,13 @@ def settled(plant, option, reference, train_at, network_kg_s, memory: Memory, on
             step = -miss * (load - before[0]) / (miss - before[1])
         before, load = (load, miss), load + step
     raise NoSolution("load does not settle")
+
+
+def check_pressures(plant: Plant, found: Train, water: Feed) -> None:
+    """Nothing on the expansion line may stand at the pressure of live steam or above it."""
+    highest = max(found.shells[-1].steam.pressure_bar, water.bleed_bar, water.heater_bar or 0.0)
+    if highest >= plant.live_bar:
+        raise AgainstPressure(f"{highest:.3f} bar on the line from {plant.live_bar:g} bar")
 
 
 def feed_at(plant, option, reference, found: Train, line: MainLine, on_live: bool) -> Feed:

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from . import steam
-from .balance import Balance, balance
+from .balance import Balance, balance, check_pressures
 from .calibration import calibrated
 from .expansion import coefficient, main_line
 from .feed import Reference, feed
@@ -123,6 +123,7 @@ def size(p: Plant, o: Option, reference: Reference, UA0: float, hottest_stated: 
     found = balance(p, o, reference, train_at, flow)
     if not found.train.buildable():
         raise NoSolution(f"option {o.key} cannot be built at the design point")
+    check_pressures(p, found.train, found.feed)
     shells, sections, flows = found.train.shells, found.train.sections, found.train.flows
     phi = tuple(coefficient(m, s.inlet, s.out_bar) for m, s in zip(flows, sections, strict=True))
     sizes = (*(s.leaving_UA for s in shells[:-1]), UA0 * o.area_factor)

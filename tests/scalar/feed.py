@@ -150,7 +150,10 @@ def _heater(plant: Plant, line: MainLine, heater_bar: float | None) -> _Heater:
     if plant.heater is None:
         return _Heater(None, 0.0, 0.0)
     outlet_C = steam.saturation_temperature(heater_bar) - plant.heater.terminal_difference_K
-    heated = steam.at(plant.boiler_bar, outlet_C).enthalpy
+    boiling = steam.saturated(plant.boiler_bar, 0.0)
+    heated = boiling.enthalpy  # hotter it would boil
+    if outlet_C < boiling.temperature_C:
+        heated = steam.at(plant.boiler_bar, outlet_C).enthalpy
     return _Heater(line.at(heater_bar), steam.saturated(heater_bar, 0.0).enthalpy, heated)
 
 

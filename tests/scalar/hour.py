@@ -5,11 +5,11 @@ from dataclasses import dataclass, replace
 from typing import Any
 
 from . import steam
-from .balance import Balance, settled
+from .balance import Balance, check_pressures, settled
 from .design import Design, OptionDesign
 from .plain import Plant
 from .report import Point, stages_of, states_of
-from .shells import Memory, NoSolution, Rating, Train
+from .shells import AgainstPressure, Memory, NoSolution, Rating, Train
 from .sliding import settle
 
 
@@ -113,7 +113,7 @@ def _limited(
         try:
             found = at(within)
             over = max(_use(plant, found).values()) - 1.0
-        except (NoSolution, ValueError):  # far above its limits a plant may have no operation at all
+        except (NoSolution, ValueError, IndexError):  # far above its limits a plant may have no operation
             if not in_reach or beyond is not None or within < 0.2 * start:
                 raise
             memory = Memory()
@@ -196,9 +196,18 @@ def _own(design: Design, key: str, hour: Hour, in_reach: bool = True) -> Point:
     """The option by itself, limits and minimum flow applied; raises NoSolution."""
     plant, sized = design.plant, design.options[key]
     found, limit = _limited(plant, sized, design.reference, hour, in_reach)
+    check_pressures(plant, found.balance.train, found.balance.feed)
     if found.balance.feed.live_kg_s < plant.min_kg_s:
         return _off(plant, hour)
     return _on(plant, hour, found, limit)
+
+
+def _baseline(design: Design, hour: Hour) -> Point:
+    """The baseline by its own rules; off where its steam would have to flow against the pressure."""
+    try:
+        return _own(design, design.baseline_key, hour)
+    except AgainstPressure:
+        return _off(design.plant, hour)
 
 
 def points(design: Design, heat_MW: float, supply_C: float, return_C: float) -> dict[str, Point]:
@@ -206,7 +215,7 @@ def points(design: Design, heat_MW: float, supply_C: float, return_C: float) -> 
     plant, hour = design.plant, Hour(heat_MW, supply_C, return_C)
     if heat_MW <= 0.0:
         return {key: _off(plant, Hour(0.0, supply_C, return_C)) for key in design.options}
-    base = _own(design, design.baseline_key, hour)
+    base = _baseline(design, hour)
     others = {key: _beside(design, key, hour, base) for key in design.options if key != design.baseline_key}
     return {design.baseline_key: base, **others}
 
@@ -238,5 +247,5 @@ def point(
     hour = Hour(heat_MW, supply_C, return_C)
     if heat_MW <= 0.0:
         return _off(design.plant, hour)
-    base = _own(design, design.baseline_key, hour)
+    base = _baseline(design, hour)
     return base if option_key == design.baseline_key else _beside(design, option_key, hour, base)

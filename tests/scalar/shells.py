@@ -18,6 +18,10 @@ class NoSolution(Exception):
     """The option cannot run like this; off design the hour runs as the baseline."""
 
 
+class AgainstPressure(NoSolution):
+    """Exhaust or bleed not below live steam; where this is true of the baseline the plant stands still."""
+
+
 @dataclass(frozen=True)
 class Rating:
     """What fixes the saturation temperature: a stated terminal difference, or UA in kW/K at this flow."""
