@@ -7,8 +7,10 @@ themselves together with a price: the bypass and the floor of a premium.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
+from numpy.typing import NDArray
 
 from appraise.case.hours import Hours
 from appraise.case.load import Case
@@ -17,7 +19,7 @@ from appraise.cycle.task import Mask
 from appraise.demand import in_dates
 from appraise.numerics import Array
 from appraise.prices import ScenarioPrices
-from appraise.year import Years
+from appraise.year import OptionYear, Years
 
 Amount = float | Array
 
@@ -216,71 +218,94 @@ class YearFigures:
     co2_t: float
 
 
+@dataclass(frozen=True, slots=True, eq=False)
+class _FirstYear:
+    """The first operating year of one option, with the baseline's values in the hours that are bypassed.
+
+    share : of its own operation in the sums. rest : while its tail is out and it runs as the baseline.
+    """
+
+    option: OptionYear
+    base: OptionYear
+    off: Mask
+    share: float
+    rest: float
+
+    @classmethod
+    def of(cls, case: Case, years: Years, index: int, bypassed: Mask | None) -> _FirstYear:
+        option, base = years.solved[0][index], years.solved[0][years.baseline]
+        off = np.zeros(option.on.shape, dtype=bool) if bypassed is None else bypassed
+        share = years.shares[index] / option.years
+        return cls(option, base, off, share, case.year.availability / option.years - share)
+
+    def merged(self, name: str) -> NDArray[Any]:
+        """Values of every hour."""
+        return np.asarray(np.where(self.off, getattr(self.base, name), getattr(self.option, name)))
+
+    def hours(self, name: str) -> float:
+        """Hours a year in which a flag is set."""
+        return self.option.hours(self.merged(name))
+
+    def total(self, name: str, among: Mask | None = None, weight: Array | float = 1.0) -> float:
+        """Sum over the hours, or some of them, with availability in it."""
+        values = (self.share * self.merged(name) + self.rest * getattr(self.base, name)) * weight
+        return float(values.sum() if among is None else values[among].sum())
+
+    def extra(self, among: Mask) -> float:
+        """Extra net power in some of the hours, MWh."""
+        gained = np.where(self.off, 0.0, self.option.power_net_MW - self.base.power_net_MW)
+        return float((self.share * gained)[among].sum())
+
+
 def year_figures(
     case: Case, years: Years, index: int, run: Traded, prices: ScenarioPrices, shape: Array, gain: float
 ) -> YearFigures:
     """The first operating year of one option. `gain` is the sum of its operating lines in that year."""
-    option, base = years.solved[0][index], years.solved[0][years.baseline]
-    is_base = index == years.baseline
-    off = np.zeros(option.on.shape, dtype=bool) if run.bypassed is None else run.bypassed
-    share, price = years.shares[index] / option.years, prices.power[0] * shape
-    rest = case.year.availability / option.years - share  # the tail is out: the hour runs as the baseline
-
-    def total(name: str, among: Mask | None = None, weight: Array | float = 1.0) -> float:
-        mine, theirs = getattr(option, name), getattr(base, name)
-        values = (share * np.where(off, theirs, mine) + rest * theirs) * weight
-        return float(values.sum() if among is None else values[among].sum())
-
-    def extra(among: Mask) -> float:
-        values = share * np.where(off, 0.0, option.power_net_MW - base.power_net_MW)
-        return float(values[among].sum())
-
-    heat, net, fuel = total("heat_MW"), total("power_net_MW"), total("fuel_MW")
-    peak_heat = years.demand_MWh - heat
-    peak_fuel = peak_heat / case.plant.peak_boiler.efficiency
+    year = _FirstYear.of(case, years, index, run.bypassed)
+    option, is_base, first_price = year.option, index == years.baseline, prices.power[0]
     inc = run.increment
     power, d_fuel, d_peak = float(inc.power_MWh[0]), float(inc.fuel_MWh[0]), float(inc.peak_fuel_MWh[0])
+    heat, fuel = year.total("heat_MW"), year.total("fuel_MW")
+    peak_heat = years.demand_MWh - heat
+    peak_fuel = peak_heat / case.plant.peak_boiler.efficiency
     plant_co2, peak_co2 = _co2_t_per_MWh(case)
-    capture = prices.power[0] * float(inc.weighted_power_MWh[0]) / power if power else None
-    live = np.where(off, base.on_live_steam, option.on_live_steam) & option.on
+    capture = None if is_base or not power else first_price * float(inc.weighted_power_MWh[0]) / power
+    live = year.merged("on_live_steam") & option.on
     bleed = option.on & ~live
-    count = option.hours
     return YearFigures(
         scenario=prices.name,
         option=option.key,
         heat_MWh=heat,
         peak_heat_MWh=peak_heat,
-        power_gross_MWh=total("power_gross_MW"),
-        power_net_MWh=net,
+        power_gross_MWh=year.total("power_gross_MW"),
+        power_net_MWh=year.total("power_net_MW"),
         fuel_MWh=fuel,
         peak_fuel_MWh=peak_fuel,
-        power_value=total("power_net_MW", weight=price),
+        power_value=year.total("power_net_MW", weight=first_price * shape),
         extra_power_MWh=power,
         extra_fuel_MWh=d_fuel,
         extra_peak_fuel_MWh=d_peak,
         extra_power_per_heat=power / heat if heat else None,
         incremental_efficiency=None if is_base or d_fuel + d_peak == 0 else power / (d_fuel + d_peak),
-        extra_power_on_bleed_MWh=extra(bleed),
-        heat_on_bleed_MWh=total("heat_MW", bleed),
-        extra_power_on_live_steam_MWh=extra(live),
-        heat_on_live_steam_MWh=total("heat_MW", live),
-        hours_on=count(option.on),
-        hours_at_limit=count(np.where(off, base.at_limit, option.at_limit)),
-        hours_bypassed=count(off),
-        hours_as_baseline=count(option.as_baseline),
-        hours_at_fuel_limit=count(np.where(off, base.at_fuel_limit, option.at_fuel_limit)),
-        hours_at_generator_limit=count(np.where(off, base.at_generator_limit, option.at_generator_limit)),
-        power_lost_MWh=total("power_lost_MW"),
-        hours_deaerator_on_live_steam=count(live),
-        hours_could_gain=count(option.could_gain),
-        hours_below_tail_minimum=count(option.below_tail_minimum),
-        hours_throttled=count(option.throttled & ~off),
-        hours_with_heater=count(np.where(off, base.heater_in_use, option.heater_in_use)),
-        flue_gas_heat_MWh=total("flue_gas_MW"),
-        capture_price=None if is_base else capture,
-        capture_ratio=None
-        if is_base or capture is None or not prices.power[0]
-        else capture / float(prices.power[0]),
+        extra_power_on_bleed_MWh=year.extra(bleed),
+        heat_on_bleed_MWh=year.total("heat_MW", bleed),
+        extra_power_on_live_steam_MWh=year.extra(live),
+        heat_on_live_steam_MWh=year.total("heat_MW", live),
+        hours_on=option.hours(option.on),
+        hours_at_limit=year.hours("at_limit"),
+        hours_bypassed=option.hours(year.off),
+        hours_as_baseline=option.hours(option.as_baseline),
+        hours_at_fuel_limit=year.hours("at_fuel_limit"),
+        hours_at_generator_limit=year.hours("at_generator_limit"),
+        power_lost_MWh=year.total("power_lost_MW"),
+        hours_deaerator_on_live_steam=option.hours(live),
+        hours_could_gain=option.hours(option.could_gain),
+        hours_below_tail_minimum=option.hours(option.below_tail_minimum),
+        hours_throttled=option.hours(option.throttled & ~year.off),
+        hours_with_heater=year.hours("heater_in_use"),
+        flue_gas_heat_MWh=year.total("flue_gas_MW"),
+        capture_price=capture,
+        capture_ratio=None if capture is None or not first_price else capture / float(first_price),
         first_year_gain=gain,
         co2_t=fuel * plant_co2 + peak_fuel * peak_co2,
     )

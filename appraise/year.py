@@ -211,6 +211,27 @@ def _baseline_year(
     return _option_year(made, made.baseline, asked, run, None, extra_running), near
 
 
+@dataclass(frozen=True, slots=True, eq=False)
+class _When:
+    """In which hours an option is on, runs as the baseline, could run alone, or has no operation [hour]."""
+
+    on: Mask
+    borrowed: Mask
+    could_gain: Mask
+    no_operation: Mask
+
+    @classmethod
+    def of(cls, valid: Mask, enough: Mask, base: OptionYear | None, extra_running: bool) -> _When:
+        """valid : a steady operation was found. enough : it needs at least the least live steam."""
+        runs, none = valid & enough, np.zeros_like(valid)
+        if base is None:
+            return cls(runs, none, none, ~valid & enough)
+        borrowed = base.on & ~valid
+        # Nobody starts a boiler for the few hours that only the option could run.
+        on = (runs | borrowed) if extra_running else base.on & (runs | borrowed)
+        return cls(on, borrowed, runs & ~base.on, none)
+
+
 def _option_year(
     made: Design, option: OptionDesign, asked: Demand, run: Run, base: OptionYear | None, extra_running: bool
 ) -> OptionYear:
@@ -223,22 +244,14 @@ def _option_year(
         return full
 
     enough = at.feed.live_steam_kg_s >= made.plant.min_kg_s
-    runs, no_operation = spread(at.valid & enough), spread(~at.valid & enough)
-    if base is None:
-        on, borrowed, could_gain = runs, np.zeros(size, dtype=bool), np.zeros(size, dtype=bool)
-    else:
-        no_operation = np.zeros(size, dtype=bool)
-        borrowed = base.on & ~spread(at.valid)
-        could_gain = runs & ~base.on
-        # Nobody starts a boiler for the few hours that only the option could run.
-        on = (runs | borrowed) if extra_running else base.on & (runs | borrowed)
-    own = on & ~borrowed
+    when = _When.of(spread(at.valid), spread(enough), base, extra_running)
+    own = when.on & ~when.borrowed
 
     def taken(name: str, values: NDArray[Number]) -> NDArray[Number]:
         mine = spread(values)
         mine[~own] = 0
         if base is not None:
-            mine[borrowed] = getattr(base, name)[borrowed]
+            mine[when.borrowed] = getattr(base, name)[when.borrowed]
         return mine
 
     heat = taken("heat_MW", at.conditions.heat_MW)
@@ -246,7 +259,7 @@ def _option_year(
     throttled = np.asarray((at.opening < 1.0).any(axis=0))
     return OptionYear(
         key=option.train.key,
-        on=on,
+        on=when.on,
         heat_MW=heat,
         peak_heat_MW=asked.heat_MW - heat,
         flue_gas_MW=taken("flue_gas_MW", at.flue_gas_MW),
@@ -262,10 +275,10 @@ def _option_year(
         at_fuel_limit=taken("at_fuel_limit", run.at_fuel_limit),
         at_generator_limit=taken("at_generator_limit", at.energy.power_lost_MW > 0),
         throttled=taken("throttled", throttled),
-        as_baseline=borrowed,
-        below_tail_minimum=borrowed & spread(few),
-        could_gain=could_gain,
-        no_operation=no_operation,
+        as_baseline=when.borrowed,
+        below_tail_minimum=when.borrowed & spread(few),
+        could_gain=when.could_gain,
+        no_operation=when.no_operation,
         greatest=_greatest(made, run, own),
         years=asked.years,
         rests=run.solution.rests,

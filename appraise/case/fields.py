@@ -12,11 +12,11 @@ from pydantic import (
     AfterValidator,
     BaseModel,
     ConfigDict,
-    ModelWrapValidatorHandler,
     ValidationError,
     ValidationInfo,
     model_validator,
 )
+from pydantic.functional_validators import ModelWrapValidatorHandler
 from pydantic_core import InitErrorDetails
 
 from appraise.case.kinds import (

@@ -16,7 +16,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from appraise.case.kinds import LARGEST, Within
-from appraise.case.words import listed, nearest, shown
+from appraise.case.words import listed, nearest, shown, utf8_text
 from appraise.errors import CaseError, Problem
 
 Array = NDArray[np.float64]
@@ -96,11 +96,7 @@ def parsed_hours(content: bytes, name: str, needed: Needed) -> Hours:
 
 def _rows(content: bytes, name: str) -> list[list[str]]:
     """All rows of cells. Raises CaseError for what is no comma-separated UTF-8 text."""
-    try:
-        text = content.decode("utf-8-sig")
-    except UnicodeDecodeError as error:
-        row = content[: error.start].count(b"\n") + 1
-        raise CaseError([Problem(f"{name} row {row}", "not UTF-8; allowed: text in UTF-8")]) from None
+    text = utf8_text(content, name, "row")
     try:
         rows = list(csv.reader(text.splitlines(), strict=True))
     except csv.Error as error:
@@ -220,7 +216,7 @@ def _times(texts: Sequence[str], name: str) -> tuple[Hourly, list[Problem]]:
     """The column of times, and its faults: form first, then order, then whole years."""
     column = f"{name}, column time"
     stamps = [text.strip() for text in texts]
-    parsed = np.full(len(stamps), np.datetime64("NaT"), dtype="datetime64[s]")
+    parsed = np.full(len(stamps), np.datetime64("NaT", "s"), dtype="datetime64[s]")
     try:
         if all(map(_TIME.fullmatch, stamps)):
             parsed = np.array(stamps, dtype="datetime64[s]")
@@ -250,9 +246,9 @@ def _times(texts: Sequence[str], name: str) -> tuple[Hourly, list[Problem]]:
 def _stamp(text: str) -> np.datetime64:
     """One time, or not-a-time where the text has another form or names no day of the calendar."""
     try:
-        return np.datetime64(text, "s") if _TIME.fullmatch(text) else np.datetime64("NaT")
+        return np.datetime64(text, "s") if _TIME.fullmatch(text) else np.datetime64("NaT", "s")
     except ValueError:
-        return np.datetime64("NaT")
+        return np.datetime64("NaT", "s")
 
 
 def _order_problems(time: Hourly, name: str) -> Iterator[Problem]:

@@ -26,7 +26,7 @@ from appraise.case.hours import Hours, Needed, parsed_hours
 from appraise.case.kinds import Place
 from appraise.case.model import Case
 from appraise.case.paths import positions
-from appraise.case.words import shown
+from appraise.case.words import shown, utf8_text
 from appraise.errors import CaseError, FileProblem, Problem
 
 __all__ = ["Case", "LoadedCase", "case_from", "doubts_of", "load_case"]
@@ -195,11 +195,7 @@ def _content(path: Path, largest: int) -> bytes:
 
 def _parsed(content: bytes, path: Path) -> dict[str, Any]:
     """The tables of a TOML file. Raises CaseError at the line and column where it is none."""
-    try:
-        text = content.decode("utf-8-sig")
-    except UnicodeDecodeError as error:
-        line = content[: error.start].count(b"\n") + 1
-        raise CaseError([Problem(f"{path.name} line {line}", "not UTF-8; allowed: text in UTF-8")]) from None
+    text = utf8_text(content, path.name, "line")
     try:
         return tomllib.loads(text)
     except tomllib.TOMLDecodeError as error:

@@ -1,7 +1,9 @@
-"""How faults speak: what was given, what is allowed, which known word is nearest."""
+"""How faults speak: what was given, what is allowed, which known word is nearest; text or none."""
 
 from collections.abc import Iterable, Mapping
 from difflib import get_close_matches
+
+from appraise.errors import CaseError, Problem
 
 _LONGEST = 60  # characters of a given text that a fault repeats
 
@@ -39,3 +41,12 @@ def nearest(name: str, known: Iterable[str], word: str = "key") -> str:
     if near:
         return f"nearest known {word}: {by_lower[near[0]]}"
     return f"known {word}s: {listed(by_lower.values())}"
+
+
+def utf8_text(content: bytes, name: str, line: str) -> str:
+    """A file's text. Raises CaseError naming the first `line` (what the file calls one) that is not UTF-8."""
+    try:
+        return content.decode("utf-8-sig")
+    except UnicodeDecodeError as error:
+        number = content[: error.start].count(b"\n") + 1
+        raise CaseError([Problem(f"{name} {line} {number}", "not UTF-8; allowed: text in UTF-8")]) from None

@@ -6,7 +6,7 @@ are [stage, point], cold to hot; `water_C` has one row more, the temperatures be
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 
 import numpy as np
 
@@ -54,6 +54,9 @@ class Shells:
     steam_kg_s: Array
     passing: Array  # what each section passes per unit of its constant [stage - 1, point]
     log_slope: Array  # d ln p/dT of saturation [stage, point], 1/K
+
+
+_ROWS = tuple(f.name for f in fields(Shells) if f.name not in ("water_C", "water_kJ_kg", "passing"))
 
 
 def _stage_saturation(
@@ -157,38 +160,23 @@ def solve_shells(
                 np.clip(water_h[i] + subcooling / network_kg_s, *water_h[i : i + 2])
             )
         )
-        values = (
-            cooled_zone,
-            t_sat,
-            shell.pressure_bar,
-            flange.pressure_bar,
-            h,
-            moisture(flange, h),
-            shell.hf,
-            shell.vf,
-            drain_h,
-            drain_C,
-            steam,
-            (shell.hg - shell.hf) / ((t_sat + 273.15) * shell.pressure_bar * 100.0 * shell.vg),
-        )
-        for name, value in zip(_ROWS, values, strict=True):
+        found = {
+            "zone_C": cooled_zone,
+            "saturation_C": t_sat,
+            "shell_bar": shell.pressure_bar,
+            "flange_bar": flange.pressure_bar,
+            "steam_kJ_kg": h,
+            "moisture": moisture(flange, h),
+            "saturated_drain_kJ_kg": shell.hf,
+            "saturated_drain_m3_kg": shell.vf,
+            "drain_kJ_kg": drain_h,
+            "drain_C": drain_C,
+            "steam_kg_s": steam,
+            # Clausius and Clapeyron: dp/dT = (hg - hf)/(T v), the volume of the liquid left out.
+            "log_slope": (shell.hg - shell.hf) / ((t_sat + 273.15) * shell.pressure_bar * 100.0 * shell.vg),
+        }
+        for name, value in found.items():
             rows[name][i] = value
         inflow = inflow + steam
         above, above_h, above_drain = flange, h, drain_h
     return Shells(water_C=water_C, water_kJ_kg=water_h, passing=passing, **rows)
-
-
-_ROWS = (
-    "zone_C",
-    "saturation_C",
-    "shell_bar",
-    "flange_bar",
-    "steam_kJ_kg",
-    "moisture",
-    "saturated_drain_kJ_kg",
-    "saturated_drain_m3_kg",
-    "drain_kJ_kg",
-    "drain_C",
-    "steam_kg_s",
-    "log_slope",
-)
