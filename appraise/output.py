@@ -9,7 +9,7 @@ from dataclasses import fields, is_dataclass
 from textwrap import fill
 from typing import TYPE_CHECKING, Any
 
-from appraise.tables import WIDTH, Cell, Column, heading, table
+from appraise.tables import WIDTH, Column, heading, table_of
 
 if TYPE_CHECKING:
     from appraise.case.load import LoadedCase
@@ -62,7 +62,9 @@ def problem_list(problems: Sequence[Problem], noun: str) -> str:
 
 def balance_table(balances: Sequence[Balance], title: str, states: bool) -> str:
     """Comparison of the options, then the stages of each; with `states` also its steam and water states."""
-    remarks = "\n".join(_remarks(balances))
+    remarks = "\n".join(
+        fill(remark, WIDTH, subsequent_indent="  ", break_on_hyphens=False) for remark in _remarks(balances)
+    )
     parts = [heading(title), _comparison(balances), *([remarks] if remarks else [])]
     for balance in balances:
         parts += [heading(f"{balance.key}: {balance.name}"), _stages(balance)]
@@ -71,38 +73,32 @@ def balance_table(balances: Sequence[Balance], title: str, states: bool) -> str:
 
 
 def _comparison(balances: Iterable[Balance]) -> str:
-    columns = [
-        Column("option"),
-        Column("heat", "MW", 2),
-        Column("gross\npower", "MW", 3),
-        Column("net\npower", "MW", 3),
-        Column("fuel", "MW", 2),
-        Column("live\nsteam", "kg/s", 3),
-        Column("bleed", "kg/s", 3),
-        Column("extra power\nper heat", "MW/MW", 5),
-        Column("share of\nideal gain", "%", 1),
-        Column("closure", "", 1),
-    ]
-    return table(columns, [_comparison_row(balance) for balance in balances])
+    return table_of(
+        [
+            (Column("option"), lambda b: b.key),
+            (Column("heat", "MW", 2), lambda b: b.heat_MW),
+            (Column("gross\npower", "MW", 3), lambda b: b.power_gross_MW),
+            (Column("net\npower", "MW", 3), lambda b: b.power_net_MW),
+            (Column("fuel", "MW", 2), lambda b: b.fuel_MW),
+            (Column("live\nsteam", "kg/s", 3), lambda b: b.live_steam_kg_s),
+            (Column("bleed", "kg/s", 3), lambda b: b.bleed_kg_s),
+            (Column("extra power\nper heat", "kW/MW", 2), lambda b: 1e3 * b.extra_power_per_heat),
+            (Column("share of\nideal gain", "%", 1), lambda b: percent(b.ideal_gain_share)),
+            (Column("closure", "", 1), lambda b: _closure(b.closure)),
+        ],
+        balances,
+    )
 
 
-def _comparison_row(b: Balance) -> list[Cell]:
-    return [
-        b.key,
-        b.heat_MW,
-        b.power_gross_MW,
-        b.power_net_MW,
-        b.fuel_MW,
-        b.live_steam_kg_s,
-        b.bleed_kg_s,
-        b.extra_power_per_heat,
-        percent(b.ideal_gain_share),
-        "< 1e-12" if b.closure < 1e-12 else f"{b.closure:.0e}",  # below that it is noise of the machine
-    ]
+def _closure(value: float) -> str:
+    """Relative; below 1e-12 it is noise of the machine."""
+    return "< 1e-12" if value < 1e-12 else f"{value:.0e}"
 
 
 def _remarks(balances: Iterable[Balance]) -> Iterator[str]:
     """What a reader of the numbers must know about a point."""
+    balances = tuple(balances)
+    yield from (f"{balance.key}: {remark}." for balance in balances for remark in balance.remarks)
     for balance in balances:
         if balance.runs_as_baseline:
             yield f"{balance.key}: no steady operation of its own at this point; it runs as the baseline."
@@ -111,62 +107,39 @@ def _remarks(balances: Iterable[Balance]) -> Iterator[str]:
 
 
 def _stages(balance: Balance) -> str:
-    columns = [
-        Column("stage"),
-        Column("shell", "bar", 4),
-        Column("saturation", "°C", 2),
-        Column("water in", "°C", 2),
-        Column("water out", "°C", 2),
-        Column("TTD", "K", 2),
-        Column("steam", "kg/s", 3),
-        Column("moisture", "%", 2),
-        Column("exhaust", "m³/s", 2),
-        Column("heat", "MW", 3),
-        Column("area", "m²", 0),
-    ]
     last = len(balance.stages) - 1
-    rows: list[list[Cell]] = [
+    names = (f"{i + 1}{' (hot)' if i == last else ' (cold)' if i == 0 else ''}" for i in range(last + 1))
+    return table_of(
         [
-            f"{index + 1}{' (hot)' if index == last else ' (cold)' if index == 0 else ''}",
-            stage.shell_bar,
-            stage.saturation_C,
-            stage.water_in_C,
-            stage.water_out_C,
-            stage.terminal_difference_K,
-            stage.steam_kg_s,
-            percent(stage.moisture),
-            stage.exhaust_m3_s,
-            stage.heat_MW,
-            stage.area_m2,
-        ]
-        for index, stage in enumerate(balance.stages)
-    ]
-    return table(columns, rows)
+            (Column("stage"), lambda row: row[0]),
+            (Column("shell", "bar", 4), lambda row: row[1].shell_bar),
+            (Column("saturation", "°C", 2), lambda row: row[1].saturation_C),
+            (Column("water in", "°C", 2), lambda row: row[1].water_in_C),
+            (Column("water out", "°C", 2), lambda row: row[1].water_out_C),
+            (Column("TTD", "K", 2), lambda row: row[1].terminal_difference_K),
+            (Column("steam", "kg/s", 3), lambda row: row[1].steam_kg_s),
+            (Column("moisture", "%", 2), lambda row: percent(row[1].moisture)),
+            (Column("exhaust", "m³/s", 2), lambda row: row[1].exhaust_m3_s),
+            (Column("heat", "MW", 3), lambda row: row[1].heat_MW),
+            (Column("area", "m²", 0), lambda row: row[1].area_m2),
+        ],
+        list(zip(names, balance.stages, strict=True)),
+    )
 
 
 def _states(balance: Balance) -> str:
-    columns = [
-        Column("state"),
-        Column("pressure", "bar", 4),
-        Column("temperature", "°C", 2),
-        Column("enthalpy", "kJ/kg", 2),
-        Column("entropy", "kJ/(kg K)", 4),
-        Column("quality", "", 4),
-        Column("flow", "kg/s", 3),
-    ]
-    rows: list[list[Cell]] = [
+    return table_of(
         [
-            state.label,
-            state.pressure_bar,
-            state.temperature_C,
-            state.enthalpy_kJ_kg,
-            state.entropy_kJ_kgK,
-            state.quality,
-            state.flow_kg_s,
-        ]
-        for state in balance.states
-    ]
-    return table(columns, rows)
+            (Column("state"), lambda state: state.label),
+            (Column("pressure", "bar", 4), lambda state: state.pressure_bar),
+            (Column("temperature", "°C", 2), lambda state: state.temperature_C),
+            (Column("enthalpy", "kJ/kg", 2), lambda state: state.enthalpy_kJ_kg),
+            (Column("entropy", "kJ/(kg K)", 4), lambda state: state.entropy_kJ_kgK),
+            (Column("quality", "", 4), lambda state: state.quality),
+            (Column("flow", "kg/s", 3), lambda state: state.flow_kg_s),
+        ],
+        balance.states,
+    )
 
 
 def percent(share: float | None) -> float | None:

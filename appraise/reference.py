@@ -209,8 +209,11 @@ def _hours() -> str:
 
 
 def main(folder: Path) -> None:
-    """Write both files into a folder. Raises FileProblem."""
-    write_whole({folder / name: text.encode() for name, text in reference_files().items()})
+    """Write both files into a folder and say so. Raises FileProblem."""
+    contents = {folder / name: text.encode() for name, text in reference_files().items()}
+    write_whole(contents)
+    for path in contents:
+        print(f"wrote {path}")
 
 
 if __name__ == "__main__":

@@ -11,6 +11,7 @@ from typing import Annotated, Any, Literal, get_args, get_origin
 from appraise.case.fields import Table, keys_of
 from appraise.case.kinds import Change, DayOfYear, Kind, Like, ListOf, TextOrTexts
 from appraise.case.model import Case
+from appraise.workbook.input_sections import MEANINGS
 from appraise.workbook.input_units import InputValue, Leaf, unit_of_leaf
 from appraise.workbook.input_words import WORDS
 
@@ -41,9 +42,13 @@ class Key:
 
     @property
     def meaning(self) -> str:
-        """What it is called, as on the sheet of inputs; of the case's own tables what they say themselves."""
-        words = WORDS.get(self.owner.removeprefix("Own"), {}).get(self.name)
-        return words or (first_sentence(self.table) if self.table is not None else "")
+        """What it does; as on the sheet of inputs where that says it, or as the table says of itself."""
+        owner = self.owner.removeprefix("Own")
+        told = MEANINGS.get(f"{owner}.{self.name}")
+        if told is None and self.table is not None and not _shortened(self.table):
+            sentence = first_sentence(self.table)
+            told = sentence[:1].lower() + sentence[1:].rstrip(".")
+        return told or WORDS.get(owner, {}).get(self.name, "")
 
     @property
     def unit(self) -> str:

@@ -7,7 +7,7 @@ from textwrap import fill
 from typing import TYPE_CHECKING, Any
 
 from appraise.output import percent, plain
-from appraise.tables import WIDTH, Cell, Column, heading, table
+from appraise.tables import WIDTH, Cell, Column, heading, table, table_of
 
 if TYPE_CHECKING:
     from appraise.cash_flow import CashFlow
@@ -138,33 +138,34 @@ def _money(study: Study) -> str:
 
 
 def _options_table(study: Study) -> str:
-    columns = [
-        Column("option"),
-        Column("extra\npower", "MWh/a", 0),
-        Column("per heat\ndesign point", "MWh/MWh", 5),
-        Column("per heat\nyear", "MWh/MWh", 5),
-        Column("capital", "", 0),
-        Column("first year's\ngain", "", 0),
-        Column("NPV", "", 0),
-        Column("IRR", "%", 1),
-        Column("payback", "years", 1),
-    ]
-    return table(columns, [_option_row(study, i) for i in range(len(study.balances))])
+    at = study.reference
+    return table_of(
+        [
+            (Column("option"), lambda i: study.balances[i].key),
+            (Column("extra\npower", "MWh/a", 0), lambda i: study.year_figures[at][i].extra_power_MWh),
+            (
+                Column("per heat\ndesign point", "kW/MW", 2),
+                lambda i: 1e3 * study.balances[i].extra_power_per_heat,
+            ),
+            (
+                Column("per heat\nyear", "kWh/MWh", 2),
+                lambda i: _thousand(study.year_figures[at][i].extra_power_per_heat),
+            ),
+            (Column("capital", "", 0), lambda i: float(study.capital[i].total) / 1e3),
+            (
+                Column("first year's\ngain", "", 0),
+                lambda i: study.year_figures[at][i].first_year_gain / 1e3,
+            ),
+            (Column("NPV", "", 0), lambda i: study.measures[at][i].npv / 1e3),
+            (Column("IRR", "%", 1), lambda i: percent(study.measures[at][i].irr)),
+            (Column("payback", "years", 1), lambda i: study.measures[at][i].simple_payback_years),
+        ],
+        range(len(study.balances)),
+    )
 
 
-def _option_row(study: Study, index: int) -> list[Cell]:
-    figures, told = study.year_figures[study.reference][index], study.measures[study.reference][index]
-    return [
-        study.balances[index].key,
-        figures.extra_power_MWh,
-        study.balances[index].extra_power_per_heat,
-        figures.extra_power_per_heat,
-        float(study.capital[index].total) / 1e3,
-        figures.first_year_gain / 1e3,
-        told.npv / 1e3,
-        percent(told.irr),
-        told.simple_payback_years,
-    ]
+def _thousand(value: float | None) -> float | None:
+    return None if value is None else 1e3 * value
 
 
 def _scenario_table(study: Study) -> str:

@@ -21,4 +21,4 @@ def starter_files() -> dict[str, bytes]:
 def next_command(written: Iterable[Path]) -> str:
     """What to type after the starter case was written."""
     case = next(path for path in written if path.suffix == ".toml")
-    return f"appraise run {shlex.quote(str(case))}"
+    return f"appraise check {shlex.quote(str(case))}"

@@ -1,8 +1,9 @@
 """Tables of text with aligned columns, units in the head, never wider than a page."""
 
-from collections.abc import Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass
 from textwrap import wrap
+from typing import TypeVar
 
 WIDTH = 100
 GAP = "  "
@@ -41,6 +42,15 @@ def table(columns: Sequence[Column], rows: Sequence[Sequence[Cell]], width: int 
     widths[0] = max(1, widths[0] - max(0, excess))
     lines = [_line(columns, line, widths) for line in [*head, ["-" * w for w in widths], *body]]
     return "\n".join(lines)
+
+
+Record = TypeVar("Record")
+
+
+def table_of(columns: Sequence[tuple[Column, Callable[[Record], Cell]]], records: Iterable[Record]) -> str:
+    """A table with a row for each record; every column brings how its cell is read off one."""
+    rows = [[cell(record) for _, cell in columns] for record in records]
+    return table([column for column, _ in columns], rows)
 
 
 def heading(text: str) -> str:

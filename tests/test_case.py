@@ -393,9 +393,12 @@ def test_all_faults_are_told_at_once():
     ]
 
 
-def test_the_starter_case_is_read_without_doubt():
+UNMEASURED = "plant.measured: no steady test and no year.metered; the baseline was compared with no meter"
+
+
+def test_the_only_doubt_of_the_starter_case_is_that_nobody_measured_it():
     loaded = load_case(STARTER)
-    assert loaded.doubts == ()
+    assert [str(problem) for problem in loaded.doubts] == [UNMEASURED]
     assert loaded.hours_path == STARTER.parent / "marrowby-year.csv"
     assert len(loaded.case_sha256) == len(loaded.hours_sha256) == 64
     assert loaded.data["study"]["years"] == loaded.case.study.years
@@ -491,8 +494,32 @@ def test_a_byte_order_mark_and_windows_line_ends_are_no_fault(tmp_path: Path):
             "a mean of 60 in column power_price; only their shape is used. Another unit or currency?",
         ),
         (
-            {"plant.design.heat_MW": 400.0},
-            "year.series: the greatest heat, 44 MW, is far below the design point's 400 MW; unit?",
+            {"year.heat_multiplier": 0.3},
+            "year.series, plant.design.heat_MW: the maximum of the hours, 13.2 MW, is far below the design "
+            "point's 40 MW; which of the two is wrong, or in another unit?",
+        ),
+        (
+            {"year.heat_multiplier": 10.0},
+            "year.series, plant.design.heat_MW: the maximum of the hours, 440 MW, is far above the design "
+            "point's 40 MW; which of the two is wrong, or in another unit?",
+        ),
+        (
+            {"plant.boiler.pressure_bar": 93.0},
+            "plant.boiler.pressure_bar: 93 bar, 50 % above the stop valve's 62 bar; a steam line loses less",
+        ),
+        (
+            {"plant.live_steam.max_kg_s": 15.0},
+            "plant.design.heat_MW: 40 MW needs about 18.2 kg/s of live steam, above the 15 of "
+            "plant.live_steam.max_kg_s",
+        ),
+        (
+            {"plant.design.heat_MW": 10.0, "year.heat_multiplier": 0.5},
+            "plant.design.heat_MW: 10 MW needs about 4.55 kg/s of live steam, below the 6 of "
+            "plant.live_steam.min_kg_s",
+        ),
+        (
+            {"scenarios.central.fuel": 70.0},
+            "scenarios.central.fuel: 70 in 2028, above the power price of 62; are the two exchanged?",
         ),
         (
             {"options.two-stage.stages": 1},
@@ -506,8 +533,46 @@ def test_a_byte_order_mark_and_windows_line_ends_are_no_fault(tmp_path: Path):
 )
 def test_what_is_doubtful_is_said(tmp_path: Path, changes: dict[str, Any], doubt: str):
     loaded = load_case(write_case(tmp_path, with_values(changes)))
-    assert [str(problem) for problem in loaded.doubts] == [doubt]
+    assert sorted(str(problem) for problem in loaded.doubts) == sorted([UNMEASURED, doubt])
     assert doubts_of(loaded.case, loaded.hours) == loaded.doubts
+
+
+def test_a_heat_in_kW_is_doubted_by_both_its_places(tmp_path: Path):
+    loaded = load_case(write_case(tmp_path, with_values({"plant.design.heat_MW": 40000.0})))
+    assert [problem.where for problem in loaded.doubts] == [
+        "plant.design.heat_MW",
+        "plant.measured",
+        "year.series, plant.design.heat_MW",
+    ]
+
+
+@pytest.mark.parametrize(
+    "changes",
+    [
+        {
+            "plant.measured": {"heat_MW": 30.0, "supply_C": 90.0, "return_C": 46.0, "power_MW": 10.0},
+        },
+        {"year.metered": {"heat_MWh": 1.9e5, "power_net_MWh": 5e4, "fuel_MWh": 2.7e5}},
+    ],
+    ids=["steady test", "metered year"],
+)
+def test_a_plant_that_was_measured_is_not_doubted(tmp_path: Path, changes: dict[str, Any]):
+    assert load_case(write_case(tmp_path, with_values(changes))).doubts == ()
+
+
+@pytest.mark.parametrize(
+    "changes",
+    [
+        {"plant.boiler.pressure_bar": 80.0},
+        {"plant.live_steam.max_kg_s": 17.0},
+        {"plant.live_steam.min_kg_s": 17.0},
+        {"scenarios.central.fuel": 62.0},
+    ],
+    ids=str,
+)
+def test_what_is_near_a_rough_limit_is_not_doubted(tmp_path: Path, changes: dict[str, Any]):
+    loaded = load_case(write_case(tmp_path, with_values(changes)))
+    assert [str(problem) for problem in loaded.doubts] == [UNMEASURED]
 
 
 JUNK = st.one_of(

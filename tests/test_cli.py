@@ -25,6 +25,7 @@ from appraise.workbook import book
 from appraise.workbook.book import workbook_bytes
 
 Read = pytest.CaptureFixture[str]
+UNMEASURED = "  plant.measured: no steady test and no year.metered; the baseline was compared with no meter\n"
 
 
 @dataclass(frozen=True)
@@ -86,7 +87,7 @@ def test_new_writes_the_starter_and_says_what_comes_next(call: Callable[..., Ans
     assert answer.out == (
         "wrote my plant/marrowby.toml\n"
         "wrote my plant/marrowby-year.csv\n"
-        "next: appraise run 'my plant/marrowby.toml'\n"
+        "next: appraise check 'my plant/marrowby.toml'\n"
     )
     assert contents(tmp_path / "my plant") == starter_files()
     assert call("check", "my plant/marrowby.toml").status == 0
@@ -124,11 +125,20 @@ hours      8760 from hours.csv, 2025-01-01T00 to 2025-12-31T23
 capital    tail
 drivers    1
 
-Nothing in it is doubtful.
+1 doubt:
+  plant.measured: no steady test and no year.metered; the baseline was compared with no meter
 """,
         "",
     )
     assert contents(tmp_path) == before
+
+
+def test_check_of_a_measured_plant_has_nothing_to_doubt(call: Callable[..., Answer], tmp_path: Path) -> None:
+    metered = {"heat_MWh": 1.9e5, "power_net_MWh": 5e4, "fuel_MWh": 2.7e5}
+    write_case(tmp_path, edited(minimal_case(), "year.metered", metered))
+    answer = call("check", "case.toml")
+    assert (answer.status, answer.err) == (0, "")
+    assert answer.out.endswith("\n\nNothing in it is doubtful.\n")
 
 
 def test_check_tells_what_is_doubtful(call: Callable[..., Answer], tmp_path: Path) -> None:
@@ -137,7 +147,8 @@ def test_check_tells_what_is_doubtful(call: Callable[..., Answer], tmp_path: Pat
     answer = call("check", "case.toml")
     assert (answer.status, answer.err) == (0, "")
     assert answer.out.endswith(
-        "\n\n2 doubts:\n"
+        "\n\n3 doubts:\n"
+        f"{UNMEASURED}"
         "  finance.discount_rate: 0.4 a year is unusually high\n"
         "  finance.inflation: 0.3 a year is unusually high\n"
     )
@@ -191,7 +202,7 @@ def test_the_table_has_the_numbers_of_the_json(
         f"{told['fuel_MW']:.2f}",
         f"{told['live_steam_kg_s']:.3f}",
         f"{told['bleed_kg_s']:.3f}",
-        f"{told['extra_power_per_heat']:.5f}",
+        f"{1e3 * told['extra_power_per_heat']:.2f}",
         f"{100 * told['ideal_gain_share']:.1f}",
         "< 1e-12",
     ]
@@ -257,6 +268,95 @@ def test_an_option_that_cannot_run_is_said_to_run_as_the_baseline(case: Path) ->
     assert "two-stage: no steady operation of its own at this point; it runs as the baseline.\n" in text
 
 
+def limited_case(folder: Path, **limits: float) -> Path:
+    """The small case with limits of the plant, by their last key."""
+    places = {
+        "max_heat_MW": "plant.condenser",
+        "max_fuel_MW": "plant.boiler",
+        "generator_limit_MW": "plant.turbine",
+        "min_kg_s": "plant.live_steam",
+    }
+    data = minimal_case()
+    for key, limit in limits.items():
+        data = edited(data, f"{places[key]}.{key}", limit)
+    return write_case(folder, data)
+
+
+def remarks_at(call: Callable[..., Answer], *more: str) -> dict[str, list[str]]:
+    """The remarks of every option in the JSON, after a look that each is printed as a line."""
+    told = json.loads(call("balance", "case.toml", "--json", "-", *more).out)["options"]
+    printed = " ".join(call("balance", "case.toml", *more).out.split())
+    for one in told:
+        for remark in one["remarks"]:
+            assert f"{one['key']}: {remark}." in printed
+    return {one["key"]: one["remarks"] for one in told}
+
+
+def test_within_all_limits_there_is_nothing_to_remark(call: Callable[..., Answer], tmp_path: Path) -> None:
+    limited_case(tmp_path, max_heat_MW=40.0, max_fuel_MW=70.0, generator_limit_MW=16.0)
+    assert remarks_at(call) == {"single": [], "two-stage": []}
+
+
+def test_more_live_steam_than_there_is_is_remarked(call: Callable[..., Answer], case: Path) -> None:
+    assert remarks_at(call, "--at", "80,85,48") == {
+        "single": ["38.5 kg/s of live steam, above max_kg_s 20: the plant cannot do this"],
+        "two-stage": ["38.8 kg/s of live steam, above max_kg_s 20: the plant cannot do this"],
+    }
+
+
+def test_limits_are_remarked_at_the_design_point_too(call: Callable[..., Answer], tmp_path: Path) -> None:
+    limited_case(tmp_path, max_heat_MW=39.99, max_fuel_MW=62.0, generator_limit_MW=14.5)
+    single, two = remarks_at(call).values()
+    heat = "40.0 MW of heat, above max_heat_MW 39.99: the plant cannot do this"
+    told = json.loads(call("balance", "case.toml", "--json", "-").out)["options"][1]
+    free = json.loads(call("balance", str(write_free(tmp_path)), "--json", "-").out)["options"][1]
+    lost = free["power_gross_MW"] - told["power_gross_MW"]
+    assert single == [heat]
+    assert two[0] == heat
+    assert two[-1] == f"{lost:.3f} MW of power above generator_limit_MW 14.5 is lost"
+    assert lost > 0.1
+
+
+def write_free(folder: Path) -> Path:
+    """The small case without a generator's limit, in a folder of its own."""
+    (folder / "free").mkdir()
+    return write_case(folder / "free", minimal_case())
+
+
+def test_below_its_minimum_flow_the_plant_would_stand_still(
+    call: Callable[..., Answer], case: Path, tmp_path: Path
+) -> None:
+    still = "0.5 kg/s of live steam, below min_kg_s 6: the plant would stand still"
+    assert remarks_at(call, "--at", "1,85,48") == {"single": [still], "two-stage": [still]}
+    told = {one["key"]: one for one in json.loads(call("balance", "case.toml", "--json", "-").out)["options"]}
+    flows = [told[key]["live_steam_kg_s"] for key in ("single", "two-stage")]
+    between = sum(flows) / 2.0
+    assert flows[0] < between < flows[1]
+    limited_case(tmp_path, min_kg_s=between)
+    single, two = remarks_at(call).values()
+    assert single[0].endswith(f" kg/s of live steam, below min_kg_s {between:g}: the plant would stand still")
+    assert two == [f"the baseline would stand still here, below min_kg_s {between:g}, and the option with it"]
+
+
+def test_an_option_that_runs_as_the_baseline_shows_the_old_condenser_alone(
+    call: Callable[..., Answer], case: Path
+) -> None:
+    told = json.loads(call("balance", "case.toml", "--at", "1,85,48", "--json", "-").out)["options"]
+    assert [one["runs_as_baseline"] for one in told] == [False, True]
+    assert [[stage["area_m2"] for stage in one["stages"]] for one in told] == [[None], [None]]
+
+
+def test_a_tail_with_a_generator_of_its_own_loses_power_at_its_own_limit(
+    call: Callable[..., Answer], tmp_path: Path
+) -> None:
+    data = edited(minimal_case(), "tail", {"efficiency": 0.8, "generator_limit_MW": 0.5})
+    write_case(tmp_path, data)
+    single, two = remarks_at(call).values()
+    assert single == []
+    assert len(two) == 1
+    assert re.fullmatch(r"\d\.\d{3} MW of power above the tail's generator_limit_MW 0\.5 is lost", two[0])
+
+
 def test_no_line_is_wider_than_a_page(call: Callable[..., Answer], tmp_path: Path) -> None:
     data = edited(minimal_case(), "options.two-stage.key", "two-stage-with-a-very-long-name-" * 3)
     data["study"]["title"] = "A plant with a title that goes on and on " * 5
@@ -306,7 +406,7 @@ def test_run_writes_workbook_and_json_and_sums_up(call: Callable[..., Answer], t
     short_case(tmp_path)
     before = contents(tmp_path)
     answer = call("run", "case.toml", "--json", "results/case.json")
-    assert (answer.status, answer.err) == (0, "")
+    assert (answer.status, answer.err) == (0, f"1 doubt:\n{UNMEASURED}")
     summary, wrote = answer.out[: answer.out.index("\nwrote")], answer.out[answer.out.index("\nwrote") :]
     assert wrote == "\nwrote reports/case.xlsx\nwrote results/case.json\n"
     told = study.run_study(load_case(tmp_path / "case.toml"))
@@ -325,7 +425,7 @@ def test_run_to_standard_output_prints_the_json_alone(
 ) -> None:
     short_case(tmp_path)
     answer = call("run", "case.toml", "--json", "-", "--out", "mine.XLSX")
-    assert (answer.status, answer.err) == (0, "")
+    assert (answer.status, answer.err) == (0, f"1 doubt:\n{UNMEASURED}")
     assert answer.out == output.json_text(study_json(at_once))
     assert (tmp_path / "mine.XLSX").read_bytes() == workbook_bytes(at_once)
 
@@ -333,7 +433,7 @@ def test_run_to_standard_output_prints_the_json_alone(
 def test_run_can_be_quiet(call: Callable[..., Answer], at_once: study.Study, tmp_path: Path) -> None:
     data = edited(edited(minimal_case(), "drivers", []), "finance.discount_rate", 0.4)
     write_case(tmp_path, data)
-    doubt = "1 doubt:\n  finance.discount_rate: 0.4 a year is unusually high\n"
+    doubt = f"2 doubts:\n{UNMEASURED}  finance.discount_rate: 0.4 a year is unusually high\n"
     loud = call("run", "case.toml")
     assert (loud.status, loud.err) == (0, doubt)
     written = contents(tmp_path)
@@ -360,7 +460,7 @@ def test_a_run_that_fails_leaves_the_old_report_alone(
     (tmp_path / "reports" / "case.xlsx").write_bytes(b"the old report")
     before = contents(tmp_path)
     monkeypatch.setattr(place, name, fails_with(SolveError("hour 17 has no solution")))
-    assert call("run", "case.toml", "--json", "case.json") == Answer(
+    assert call("run", "case.toml", "--quiet", "--json", "case.json") == Answer(
         1, "", "Error: hour 17 has no solution\n"
     )
     assert contents(tmp_path) == before
@@ -580,7 +680,7 @@ def test_a_wrong_case_is_told_fault_by_fault_and_leaves_nothing(
     data, faults = WRONG_CASES[fault]
     write_case(tmp_path, data)
     before = contents(tmp_path)
-    refused(call("run", "case.toml", "--out", "out.xlsx", "--json", "out.json"), faults)
+    refused(call("run", "case.toml", "--quiet", "--out", "out.xlsx", "--json", "out.json"), faults)
     refused(call("balance", "case.toml", "--json", "out.json"), faults)
     assert contents(tmp_path) == before
     checked = call("check", "case.toml")

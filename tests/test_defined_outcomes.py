@@ -140,4 +140,8 @@ def test_a_tail_without_a_pressure_drop_is_named(tmp_path: Path) -> None:
 def test_a_design_point_over_the_limits_only_warns(tmp_path: Path) -> None:
     loaded = loaded_with(tmp_path, plant__live_steam__max_kg_s=15.0)
     made = design(loaded.case)
-    assert design_balances(loaded.case, made)[0].live_steam_kg_s > 15.0
+    balance = design_balances(loaded.case, made)[0]
+    assert balance.live_steam_kg_s > 15.0
+    assert balance.remarks == (
+        f"{balance.live_steam_kg_s:.1f} kg/s of live steam, above max_kg_s 15: the plant cannot do this",
+    )

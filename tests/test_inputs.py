@@ -1,4 +1,4 @@
-"""Every case that comes along is read without faults or doubts, runs, and closes in energy and money.
+"""Every case that comes along is read without faults, runs, and closes in energy and money.
 
 The studies here leave out what solves the year tens of times over: tornado, draws, moves of the gain and
 design choice. The smallest case is run in full.
@@ -71,8 +71,8 @@ def test_the_cases_are_here() -> None:
 
 
 @pytest.mark.parametrize("name", CASES)
-def test_read_without_faults_or_doubts(name: str) -> None:
-    assert load_case(INPUTS / name).doubts == ()
+def test_read_without_faults_and_one_doubt_that_invented_plants_deserve(name: str) -> None:
+    assert [problem.where for problem in load_case(INPUTS / name).doubts] == ["plant.measured"]
 
 
 @pytest.mark.parametrize("name", CASES)

@@ -2,13 +2,16 @@
 
 import re
 import tomllib
+from collections import defaultdict
 from pathlib import Path
 
 import pytest
 
 from appraise import cli
+from appraise.capex import capital
 from appraise.case.load import case_from
 from appraise.case.model import Case
+from appraise.chain import solve_physics
 from appraise.output import balance_table
 from appraise.results import run_summary, study_json
 from appraise.study import Study, balances
@@ -74,6 +77,36 @@ def test_the_option_of_the_readme_is_solved_beside_the_others(marrowby_study: St
     assert added == {"three-stage"}
     three, two = solved["three-stage"], solved["two-stage-subcooled"]
     assert three.extra_power_per_heat > two.extra_power_per_heat > 0.0
+
+
+def edited_as_told(demo: str) -> str:
+    """The demo with the bid of the README, in every list that the README names."""
+    names = README.split("is added to `only` of")[1].split("`share_of` of")[0]
+    named = re.findall(r"`([a-z-]+)`", names)
+    *pay, priced = named
+    assert priced == "condensers-unbid"
+    for key in pay:
+        head, found, rest = demo.partition(f'key = "{key}"\n')
+        assert found, key
+        demo = head + found + rest.replace('only = ["two-stage', 'only = ["three-stage", "two-stage', 1)
+    demo = demo.replace('share_of = ["condenser",', f'share_of = ["{priced}", "condenser",')
+    return f"{demo}\n{blocks('toml')[0]}"
+
+
+def test_the_bid_of_the_readme_is_complete(marrowby_study: Study):
+    """Every kind of item that the two-stage option with drain cooler pays for, the bid pays for too."""
+    demo = (ROOT / "inputs" / "marrowby.toml").read_text(encoding="utf-8")
+    case = case_from(tomllib.loads(edited_as_told(demo)))
+    physics = solve_physics(case, marrowby_study.hours)
+    bought = {one.option: one.items for one in capital(case, physics.sizes)}
+    bid, other = defaultdict[str, float](float), defaultdict[str, float](float)
+    for paid, option in ((bid, "three-stage"), (other, "two-stage-subcooled")):
+        for item in bought[option]:
+            paid[item.key] += item.amount
+    assert set(other) - set(bid) == {"tail", "condenser"}
+    assert set(bid) - set(other) == {"tail-as-bid", "condensers-unbid"}
+    assert all(amount > 0.0 for amount in bid.values())
+    assert bid["installation"] == pytest.approx(0.35 * (bid["condensers-unbid"] + bid["drain-cooler"]))
 
 
 def test_the_hours_of_the_readme_are_those_of_the_demo():

@@ -13,11 +13,14 @@ import pytest
 from cases import minimal_case
 from published import STATUS_WORDS
 
+from appraise.case.fields import Curve, PricePath
 from appraise.case.load import case_from
 from appraise.case.model import Case
 from appraise.errors import CaseError
 from appraise.reference import anchor, json_schema, key_reference, main, reference_files
 from appraise.reference_keys import places, table_keys
+from appraise.workbook.input_sections import MEANINGS
+from appraise.workbook.input_words import WORDS
 
 ROOT = Path(__file__).parents[1]
 INPUTS = ROOT / "inputs"
@@ -111,8 +114,10 @@ def test_the_files_are_as_they_would_be_written(name: str):
     assert (INPUTS / name).read_text(encoding="utf-8") == reference_files()[name], told
 
 
-def test_both_files_go_into_any_folder(tmp_path: Path):
+def test_both_files_go_into_any_folder_and_are_named(tmp_path: Path, capsys: pytest.CaptureFixture[str]):
     main(tmp_path / "new")
+    new = tmp_path / "new"
+    assert capsys.readouterr().out == f"wrote {new / 'keys.md'}\nwrote {new / 'case.schema.json'}\n"
     assert {path.name: path.read_text(encoding="utf-8") for path in (tmp_path / "new").iterdir()} == (
         reference_files()
     )
@@ -137,6 +142,24 @@ def test_every_key_of_every_table_has_a_row_with_meaning(place):
         assert meaning, name
 
 
+def bare(text: str) -> str:
+    """Letters alone, so that `price_year` and "price year" are the same."""
+    return re.sub(r"[^a-z]", "", text.lower())
+
+
+@pytest.mark.parametrize("place", list(places()), ids=lambda place: place.way)
+def test_a_meaning_says_more_than_its_key(place):
+    for key in table_keys(place.model):
+        assert bare(key.meaning) not in bare(key.name), key.name
+
+
+def test_words_on_the_sheet_of_inputs_are_short_and_meanings_lead_to_keys():
+    assert max(len(words) for table in WORDS.values() for words in table.values()) < 45
+    keys = {f"{key.owner}.{key.name}" for place in places() for key in table_keys(place.model)}
+    keys |= {f"{table.__name__}.{key.name}" for table in (Curve, PricePath) for key in table_keys(table)}
+    assert set(MEANINGS) <= keys
+
+
 def test_no_table_of_the_demo_is_missing():
     ways = {place.way.split(".")[0] for place in places()} | {"notes"}
     assert ways == set(Case.model_fields)
@@ -144,20 +167,25 @@ def test_no_table_of_the_demo_is_missing():
 
 def test_rows_of_the_page_by_hand():
     assert (
-        "| `mechanical_efficiency` | `0.985` | – | a number above 0, at most 1 | mechanical efficiency |"
-        in (section("[plant.turbine]"))
+        "| `mechanical_efficiency` | `0.985` | – | a number above 0, at most 1 | shaft of the "
+        "blading to shaft of the generator, gear included |" in (section("[plant.turbine]"))
     )
-    assert '| `deaerator_control` | `"fixed"` |  | "fixed" or "sliding" | deaerator control |' in (
-        section("[plant.feed]")
+    assert (
+        '| `deaerator_control` | `"fixed"` |  | "fixed" or "sliding" | fixed = constant '
+        "pressure; sliding = 5 % under its bleed, to a minimum |" in section("[plant.feed]")
     )
     assert "| `drain_approach_K` | as in `[new_condenser]` | K | a number above 0, at most 50 |" in (
         section("[options.new_condenser]")
     )
-    assert "| `discount_rate` | **required** | fraction | a number from 0 to 1 | discount rate |" in (
-        section("[finance]")
+    assert (
+        "| `discount_rate` | **required** | fraction | a number from 0 to 1 | discount rate, on the stated "
+        "basis |" in section("[finance]")
     )
-    assert "| a list of shares above 0, sum 1 | share of the temperature rise |" in section("[[options]]")
-    assert "| a list of calendar years, rising | year |" in section("[capex.index]")
+    assert (
+        "| a list of shares above 0, sum 1 | share of the temperature rise of each stage, cold to hot |"
+        in (section("[[options]]"))
+    )
+    assert "| a list of calendar years, rising | years of the cost index |" in section("[capex.index]")
     assert "| `carbon` | `0` | money/t |" in section("[scenarios.NAME]")
     assert "| `exchange` | none | money/foreign | by name, each a number above 0 |" in section("[capex]")
 

@@ -21,12 +21,16 @@ _HIGH_DISCOUNT_RATE = 0.3
 _HIGH_INFLATION = 0.15
 _PRICE_FACTOR = 3.0  # between the mean of the hours and a scenario's first year
 _HEAT_FACTORS = (0.5, 5.0)  # greatest demand over the heat of the design point
+_BOILER_FACTOR = 1.3  # boiler over stop valve; a steam line and superheaters lose 5 to 25 % of the pressure
+_STEAM_MJ_KG = 2.2  # heat of a condenser per kg of live steam, roughly
+_ROUGHLY = 1.15  # how far that may be off
 
 
 def doubts_of(case: Case, hours: Hours) -> tuple[Problem, ...]:
     """Everything doubtful about a case and its hours, in the order of the file."""
     groups = (
         _years(case),
+        _plant(case),
         _options(case),
         _year(case, hours),
         _prices(case, hours),
@@ -48,6 +52,34 @@ def _years(case: Case) -> Doubts:
         yield (
             "study.price_year",
             f"prices of {study.price_year} are used from {study.first_year} on; more than ten years apart",
+        )
+
+
+def _plant(case: Case) -> Doubts:
+    plant = case.plant
+    steam, boiler_bar, heat = plant.live_steam, plant.boiler.pressure_bar, plant.design.heat_MW
+    if boiler_bar > _BOILER_FACTOR * steam.pressure_bar:
+        share = boiler_bar / steam.pressure_bar - 1.0
+        yield (
+            "plant.boiler.pressure_bar",
+            f"{boiler_bar:g} bar, {100.0 * share:.0f} % above the stop valve's {steam.pressure_bar:g} bar; "
+            "a steam line loses less",
+        )
+    about = heat / _STEAM_MJ_KG
+    for limited, key, limit, word in (
+        (about > _ROUGHLY * steam.max_kg_s, "max_kg_s", steam.max_kg_s, "above"),
+        (about < steam.min_kg_s / _ROUGHLY, "min_kg_s", steam.min_kg_s, "below"),
+    ):
+        if limited:
+            yield (
+                "plant.design.heat_MW",
+                f"{heat:g} MW needs about {about:.3g} kg/s of live steam, {word} the {limit:g} of "
+                f"plant.live_steam.{key}",
+            )
+    if plant.measured is None and case.year.metered is None:
+        yield (
+            "plant.measured",
+            "no steady test and no year.metered; the baseline was compared with no meter",
         )
 
 
@@ -102,8 +134,9 @@ def _year(case: Case, hours: Hours) -> Doubts:
     if heat is not None and not low * design <= greatest <= high * design:
         word = "below" if greatest < design else "above"
         yield (
-            "year.series",
-            f"the greatest heat, {greatest:.3g} MW, is far {word} the design point's {design:g} MW; unit?",
+            "year.series, plant.design.heat_MW",
+            f"the maximum of the hours, {greatest:.3g} MW, is far {word} the design point's {design:g} MW; "
+            "which of the two is wrong, or in another unit?",
         )
     if heat is not None and greatest > 0.0 and float(heat.mean()) == greatest:
         yield "year.series", f"the heat is {greatest:g} MW in every hour"
@@ -120,17 +153,21 @@ def _heat(case: Case, hours: Hours) -> Array | None:
 
 
 def _prices(case: Case, hours: Hours) -> Doubts:
+    first_year = case.study.first_year
     for name, scenario in case.scenarios.items():
         column = hours.price(scenario.price_column)
-        first = _first(scenario.power, case.study.first_year)
-        if column is None or first <= 0.0:
-            continue
-        mean = float(column.mean())
-        if mean > 0.0 and not 1.0 / _PRICE_FACTOR <= mean / first <= _PRICE_FACTOR:
+        power, fuel = _first(scenario.power, first_year), _first(scenario.fuel, first_year)
+        mean = 0.0 if column is None else float(column.mean())
+        if power > 0.0 and mean > 0.0 and not 1.0 / _PRICE_FACTOR <= mean / power <= _PRICE_FACTOR:
             yield (
                 f"scenarios.{name}.power",
-                f"{first:g} in {case.study.first_year}, but the hours have a mean of {mean:.3g} in column "
+                f"{power:g} in {first_year}, but the hours have a mean of {mean:.3g} in column "
                 f"{scenario.price_column}; only their shape is used. Another unit or currency?",
+            )
+        elif fuel > power:
+            yield (
+                f"scenarios.{name}.fuel",
+                f"{fuel:g} in {first_year}, above the power price of {power:g}; are the two exchanged?",
             )
 
 

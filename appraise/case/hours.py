@@ -31,7 +31,7 @@ RANGES: Mapping[str, Within] = {
 }
 """The columns a series may have beside `time`, and what each may hold."""
 
-_SHOWN_FAULTS = 10  # of one kind; the rest is counted
+_SHOWN_FAULTS = 3  # of one kind; the rest is counted, unless it is a single one
 FIRST_ROW = 2  # of the numbers
 _TIME = re.compile(r"(19|20|21)\d\d-\d\d-\d\d[T ]\d\d:\d\d(:\d\d(\.0+)?)?", re.ASCII)
 _WITH_OFFSET = re.compile(r"\d{4}-\d\d-\d\d[T ][\d:.]+ ?(Z|[+-]\d\d(:?\d\d)?)", re.ASCII | re.IGNORECASE)
@@ -164,10 +164,11 @@ def _some(
     wrong: Sequence[int] | NDArray[np.intp], problem: Callable[[int], Problem], where: str, noun: str
 ) -> Iterator[Problem]:
     """The first few problems of one kind, and how many more there are."""
-    for index in wrong[:_SHOWN_FAULTS]:
+    told = len(wrong) if len(wrong) <= _SHOWN_FAULTS + 1 else _SHOWN_FAULTS
+    for index in wrong[:told]:
         yield problem(int(index))
-    if len(wrong) > _SHOWN_FAULTS:
-        yield Problem(where, f"and {len(wrong) - _SHOWN_FAULTS} more {noun}")
+    if len(wrong) > told:
+        yield Problem(where, f"and {len(wrong) - told} more {noun}")
 
 
 def _numbers(texts: Sequence[str], kind: Within, column: str, name: str) -> tuple[Array, list[Problem]]:

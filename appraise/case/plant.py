@@ -62,7 +62,7 @@ class LiveSteam(Table):
     min_kg_s: NotNegative
 
     def contradictions(self) -> Iterator[tuple[str, str]]:
-        """Least flow at most the greatest."""
+        """Minimum flow at most the maximum."""
         if self.min_kg_s > self.max_kg_s:
             yield "min_kg_s", f"{self.min_kg_s:g} given; allowed: at most max_kg_s, {self.max_kg_s:g}"
 

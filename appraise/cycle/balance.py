@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -23,6 +24,8 @@ from appraise.errors import CaseError, SolveError
 from appraise.numerics import Array
 from appraise.steam import entropy_pt, liquid_entropy_p, superheated_temperature_ph
 from appraise.steam_fits import entropy_ph, liquid_enthalpy, saturation, volume_ph
+
+_JUST_ABOVE = 1.0 + 1e-9  # a limit that is only just reached is kept
 
 
 @dataclass(frozen=True, slots=True)
@@ -60,7 +63,10 @@ class StageBalance:
 
 @dataclass(frozen=True, slots=True)
 class Balance:
-    """One option at one point, beside the baseline at equal heat."""
+    """One option at one point, beside the baseline at equal heat.
+
+    remarks : where the point lies beyond a limit of the plant, which here only warns.
+    """
 
     key: str
     name: str
@@ -81,16 +87,18 @@ class Balance:
     closure: float
     deaerator_on_live_steam: bool
     runs_as_baseline: bool
+    remarks: tuple[str, ...]
     stages: tuple[StageBalance, ...]
     states: tuple[State, ...]
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class _Point:
-    """One option solved at one point."""
+    """One option solved at one point; `running` is the option, or the baseline where it runs as that."""
 
     option: OptionDesign
     solution: Solution
+    running: OptionDesign
 
     @property
     def energy(self) -> Energy:
@@ -100,7 +108,7 @@ class _Point:
 
 def design_balances(case: Case, made: Design) -> tuple[Balance, ...]:
     """Heat balance of every option at the design point, with its share of the ideal gain."""
-    points = [_Point(o, o.solution) for o in made.options]
+    points = [_Point(o, o.solution, o) for o in made.options]
     base = next(p for p in points if p.option.train.key == made.baseline.train.key)
     shares = [
         0.0 if point is base else _ideal_share(case, option, made, point.option)
@@ -128,7 +136,7 @@ def point_balances(
 ) -> tuple[Balance, ...]:
     """Heat balance of every option at another point, sizes as at the design point. Limits only warn."""
     at = Conditions(np.array([heat_MW]), np.array([return_C]), np.array([supply_C]))
-    points = [_Point(o, option_at(made, o, at)) for o in made.options]
+    points = [_Point(o, option_at(made, o, at), o) for o in made.options]
     base = next(p for p in points if p.option.train.key == made.baseline.train.key)
     if not base.solution.valid[0]:
         why = why_not(made.plant, base.solution)
@@ -173,13 +181,55 @@ def _balance(case: Case, made: Design, at: _Point, base: _Point, ideal_share: fl
         closure=float(at.energy.closure[0]),
         deaerator_on_live_steam=bool(at.solution.on_live_steam[0]),
         runs_as_baseline=False,
+        remarks=tuple(_beyond(case, made, at, base)),
         stages=_stages(made, at),
         states=_states(case, made, at),
     )
 
 
+def _beyond(case: Case, made: Design, at: _Point, base: _Point) -> Iterator[str]:
+    """What the plant could not do of this, by the limits that shape the hours of the year."""
+    plant, feed = made.plant, at.solution.feed
+    steam, least = float(feed.live_steam_kg_s[0]), plant.min_kg_s
+    for what, unit, value, key, limit in (
+        ("live steam", "kg/s", steam, "max_kg_s", plant.max_kg_s),
+        ("heat", "MW", float(at.solution.conditions.heat_MW[0]), "max_heat_MW", plant.max_heat_MW),
+        ("fuel", "MW", float(at.energy.fuel_MW[0]), "max_fuel_MW", plant.max_fuel_MW),
+    ):
+        if value > limit * _JUST_ABOVE:
+            yield f"{_apart(value, limit)} {unit} of {what}, above {key} {limit:g}: the plant cannot do this"
+    alone = float(base.solution.feed.live_steam_kg_s[0])
+    if steam < least:
+        flow = f"{_apart(steam, least)} kg/s of live steam"
+        yield f"{flow}, below min_kg_s {least:g}: the plant would stand still"
+    elif alone < least and not case.year.extra_running:
+        yield f"the baseline would stand still here, below min_kg_s {least:g}, and the option with it"
+    yield from _lost_power(made, at)
+
+
+def _lost_power(made: Design, at: _Point) -> Iterator[str]:
+    """Power that the limits of generators take away at the terminals."""
+    tail, lost_MW = at.running.train.tail, float(at.energy.power_lost_MW[0])
+    own, lost_tail_MW = tail.generator_limit_MW, 0.0
+    if own is not None:
+        terminals = tail.mechanical_efficiency * tail.generator_efficiency
+        lost_tail_MW = max(0.0, float(at.energy.shaft_tail_MW[0]) * terminals - own)
+    for lost, key, limit in (
+        (lost_MW - lost_tail_MW, "generator_limit_MW", made.plant.generator_limit_MW),
+        (lost_tail_MW, "the tail's generator_limit_MW", own),
+    ):
+        if limit is not None and lost > 1e-9 * limit:
+            yield f"{lost:.3f} MW of power above {key} {limit:g} is lost"
+
+
+def _apart(value: float, limit: float) -> str:
+    """A number with one decimal, or as many more as set it apart from the limit."""
+    texts = [f"{value:.{decimals}f}" for decimals in range(1, 10)]
+    return next((text for text in texts if (float(text) - limit) * (value - limit) > 0.0), texts[-1])
+
+
 def _stages(made: Design, at: _Point) -> tuple[StageBalance, ...]:
-    shells, train = at.solution.shells, at.option.train
+    shells, train = at.solution.shells, at.running.train
     flange = exhaust_state(shells.shell_bar, made.plant.exhaust_loss_share)
     volume = np.cumsum(shells.steam_kg_s, axis=0) * volume_ph(flange, shells.steam_kJ_kg)
     heat = at.solution.network_kg_s * np.diff(shells.water_kJ_kg, axis=0) / 1e3
@@ -202,7 +252,7 @@ def _stages(made: Design, at: _Point) -> tuple[StageBalance, ...]:
             drain_C=one(shells.drain_C, i),
             drain_zone_C=one(shells.zone_C, i),
             heat_MW=one(heat, i),
-            area_m2=None if train.stages[i].existing else at.option.surface[i].total_m2,
+            area_m2=None if train.stages[i].existing else at.running.surface[i].total_m2,
         )
         for i in range(shells.shell_bar.shape[0])
     )
