@@ -124,7 +124,9 @@ def estimate_class(capital: OptionCapital) -> EstimateClass:
         number, use, band = 4, "study", "-15 to -30 % and +20 to +50 %"
     else:
         number, use, band = 5, "screening", "-20 to -50 % and +30 to +100 %"
-    share = f"{quoted / total:.0%} of the equipment rests on quotations" if total > 0.0 else "no equipment"
+    share = "no equipment"
+    if total > 0.0:
+        share = f"{100.0 * quoted / total:.0f} % of the equipment rests on amounts given, taken as quotations"
     text = f"class {number} ({use}): {share}; usual accuracy {band} (AACE International 18R-97, 2020)"
     return number, text
 

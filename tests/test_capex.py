@@ -402,11 +402,11 @@ def test_more_surface_costs_more_across_the_parallel_units(area, factor) -> None
 def test_estimate_class_follows_what_the_equipment_rests_on() -> None:
     shell = {"key": "shell", "correlation": OWN | {"fixed": 0.0, "exponent": 0.0}}  # 1000
     shares = {"key": "rest", "share_of": "all", "share": 0.9}
-    for quoted, number, share in ((999.0, 5, "50%"), (1000.0, 4, "50%"), (3000.0, 4, "75%")):
+    for quoted, number, share in ((999.0, 5, "50 %"), (1000.0, 4, "50 %"), (3000.0, 4, "75 %")):
         _, option = priced([shell, {"key": "tail", "amount": quoted}, shares])
         found, text = estimate_class(option)
         assert found == number
-        assert f"{share} of the equipment rests on quotations" in text
+        assert f"{share} of the equipment rests on amounts given, taken as quotations" in text
         assert "AACE International 18R-97" in text
     assert estimate_class(priced([])[1])[0] == 5
 

@@ -23,7 +23,7 @@ from appraise.study import Study, run_study
 from appraise.workbook.addresses import cells_in, corners
 from appraise.workbook.cautions import cautions_sheet
 from appraise.workbook.cells import LABEL, TOTAL, UNIT, YEAR_ZERO, Cell, Sheet
-from appraise.workbook.checks import checks_sheet, title_of
+from appraise.workbook.checks import LIMIT, OVER, SAYS, VALUE, checks_sheet, over, plainer, title_of, unit_of
 from appraise.workbook.diagram_data import (
     Window,
     dome,
@@ -532,12 +532,32 @@ def test_every_check_is_listed() -> None:
     for check in study.checks:
         (row,) = rows_labelled(sheet, title_of(study.case, check))
         assert sheet.cells[row, 2].value == ("OK" if check.passed else "LOOK")
-        for col, value in ((3, check.value), (4, check.limit)):
+        for col, value in ((VALUE, check.value), (LIMIT, check.limit)):
             shown = sheet.cells[row, col].value
             assert shown == "–" if value is None else shown == pytest.approx(value, rel=0.05)
-        assert str(sheet.cells[row, 6].value).lower() == check.message.lower()
+        assert str(sheet.cells[row, SAYS].value).lower() == plainer(check).lower()
+        assert bool(sheet.cells[row, OVER].value) == (not check.passed and check.limit is not None)
+        assert bool(unit_of(check)) == (check.value is not None)
     assert named(sheet, "checks_total") == [len(study.checks)]
     assert named(sheet, "checks_passed") == [sum(check.passed for check in study.checks)]
+
+
+def test_checks_tell_units_and_by_how_much_a_limit_is_exceeded() -> None:
+    moist = Check("moisture, two-stage", False, 0.1512, 0.12, "x")
+    assert (unit_of(moist), over(moist, "%")) == ("%", "26 %")
+    assert over(replace(moist, value=0.1206), "%") == "0.5 %"
+    assert over(replace(moist, passed=True, value=0.11), "%") == ""
+    drain = Check(
+        "drain into stage 1, a", False, 4.0, 0.0, "colder shell, K: it still flashes; provide for it"
+    )
+    assert (unit_of(drain), over(drain, "K")) == ("K", "4 K")
+    assert plainer(drain) == "colder shell: it still flashes; size nozzle and vent for flash steam"
+    live = Check("live steam of the steady test", True, 0.01, 0.03, "x")
+    assert (unit_of(live), unit_of(replace(live, name="live steam at the design point"))) == ("%", "kg/s")
+    assert over(Check("comparison with meters", False, None, None, "x"), "") == ""
+    said = text_of(demo("Checks"))
+    assert "Greatest volume flow through the exhaust, at 2025" in said
+    assert "Greatest duty of the condenser, at 2025" in said
 
 
 def test_checks_name_options_and_items_as_people_do_and_hours_by_the_clock() -> None:

@@ -26,10 +26,12 @@ from appraise.workbook import book
 from appraise.workbook.break_even import TITLE, break_even_sheet
 from appraise.workbook.cells import LABEL, TOTAL, UNIT, YEAR_ZERO, Sheet, ref
 from appraise.workbook.design_choice import design_choice_sheet
-from appraise.workbook.design_words import Stated, cost_words, curve_words, joint_words, surface_words
+from appraise.workbook.design_words import Stated, caveat_of, cost_words, curve_words, joint_words
 from appraise.workbook.draws import draws_sheet
 from appraise.workbook.draws_figures import WANTED_BINS, bins_of, round_step
+from appraise.workbook.draws_leaning import below_stated, leaning_badly, lower_words, slopes
 from appraise.workbook.draws_words import distribution_words, method_words, option_words
+from appraise.workbook.faults import faults_of
 from appraise.workbook.naming import CHOSEN_SCENARIO, input_name
 
 pytestmark = pytest.mark.filterwarnings("ignore:Unable to read chart:UserWarning")
@@ -183,6 +185,7 @@ def test_draws_shows_the_figures_of_the_run() -> None:
         ("P95: one draw in twenty is higher", np.percentile(one.npv, 95)),
         ("Standard error of the mean, by the number", one.standard_deviation / np.sqrt(300)),
         ("Chance of a positive value", (one.npv > 0).mean()),
+        ("  its standard error, by the number", (one.npv > 0).std() / np.sqrt(300)),
         ("Number of draws", 300),
     ):
         assert sheet.cells[place_of(sheet, label), TOTAL + 1].value == pytest.approx(value), label
@@ -227,6 +230,17 @@ def test_curve_and_histogram_hold_all_draws_and_hatch_the_losses() -> None:
     assert bars.horizontal
 
 
+@pytest.mark.parametrize(("shift", "sides"), [(-1e9, ["below zero"]), (1e9, ["zero and above"])])
+def test_a_histogram_of_losses_or_gains_alone_has_one_kind_of_bars(shift: float, sides: list[str]) -> None:
+    study = drawn_study()
+    assert study.risk is not None
+    options = tuple(replace(one, npv=one.npv + shift) for one in study.risk.options)
+    sheets = book.sheets_of(replace(study, risk=replace(study.risk, options=options)))
+    (sheet,) = [sheet for sheet in sheets if sheet.title == "Draws"]
+    assert [series.label for series in sheet.charts[-1].series] == sides
+    assert list(faults_of(sheets)) == []
+
+
 @example(np.array([0.0, 5e-324]))
 @example(np.array([-1.0, *[1e7] * 600, 1e7 + 1e-3]))
 @example(np.array([*[-1e6] * 600, 3.0]))
@@ -257,7 +271,8 @@ def test_steps_are_round(step: float, rounded: float) -> None:
 
 def test_what_the_draws_mean_is_said_in_words() -> None:
     exact = MethodError(12, 0.5 * METHOD_LIMIT, 0.012, 0.0, 40, 4380)
-    assert "can be read as they stand" in method_words(exact)
+    assert "12 draws cannot check a chance finer than 8 points (`--verify 200` would)." in method_words(exact)
+    assert "finer than 0 points." in method_words(replace(exact, checked=400))
     rough = replace(exact, root_mean_square=2.0 * METHOD_LIMIT)
     assert "above the limit" in method_words(rough)
     assert "off by 2.0 %" in method_words(rough)
@@ -268,14 +283,51 @@ def test_what_the_draws_mean_is_said_in_words() -> None:
         risk.options[1], chance_npv_positive=0.874, chance_best=0.6, p5=-123_400.0, p95=2_345_600.0
     )
     assert option_words("Two stages", option, False, "EUR") == (
-        "“Two stages” is worth more than the baseline in 87 % of the draws and best of all in 60 %; "
-        "nine draws in ten lie between -123 and 2,346 thousand EUR."
+        "“Two stages” is worth more than the plant as it stands in 87 % of the draws and best of all in "
+        "60 %; nine draws in ten lie between −123 and 2,346 thousand EUR."
     )
     assert "in those no option pays" in option_words("As it is", option, True, "EUR")
     normal = Distribution(kind="normal", mean=-0.5, standard_deviation=0.02)
     assert distribution_words(normal) == "normal: mean −0.5, standard deviation 0.02"
     lognormal = Distribution(kind="lognormal", p10=0.8, p90=1.25)
     assert distribution_words(lognormal) == "lognormal: P10 0.8, P90 1.25"
+
+
+def test_a_mean_below_the_value_as_stated_is_explained_by_what_leans_to_the_bad_side() -> None:
+    study = drawn_study()
+    risk = study.risk
+    assert risk is not None
+    one = replace(risk.options[1], mean=100.0, standard_error=10.0)
+    assert [below_stated(one, stated) for stated in (119.0, 121.0)] == [False, True]
+    drivers = [driver for driver in study.case.drivers if driver.distribution is not None]
+    leaning = leaning_badly(study.case, risk, drivers, one)
+    slope = dict(zip(risk.labels, slopes(risk.values, one.npv), strict=True))
+    assert slope["Capital"] < 0.0 < slope["Tail"]
+    assert "Capital" not in {driver.label for driver in leaning}  # stated at 1.1, more than is drawn
+    dearer = risk.values.copy()
+    dearer[:, risk.labels.index("Capital")] += 0.5
+    leaning = leaning_badly(study.case, replace(risk, values=dearer), drivers, one)
+    capital = leaning[0]
+    assert (capital.label, capital.stated) == ("Capital", 1.1)
+    assert capital.loss == pytest.approx(slope["Capital"] * (1.1 - capital.median), rel=1e-6)
+    assert all(driver.loss > 0.0 for driver in leaning)
+    words = lower_words(["A", "B"], leaning)
+    assert words.startswith("The mean of “A” and “B” is below the value as stated, because the ranges lean")
+    assert "medians: Capital at 1." in words
+    assert "(stated 1.1)" in words
+    assert lower_words(["A", "B", "C"], leaning).startswith("The mean of “A”, “B” and “C” is below")
+    assert lower_words(["A"], leaning).startswith("The mean of “A” is below")
+    assert lower_words(["A"], ()) == ""
+
+
+def test_slopes_are_those_of_each_driver_alone_though_drawn_together() -> None:
+    random = np.random.default_rng(1)
+    first = random.normal(size=500)
+    second = 0.9 * first + 0.3 * random.normal(size=500)
+    values = np.column_stack([first, 1e3 * second, np.full(500, 4.0)])
+    found = slopes(values, 7.0 + 3.0 * first - 2.0 * second)
+    assert np.corrcoef(values[:, 1], 3.0 * first - 2.0 * second)[0, 1] > 0.5
+    assert found == pytest.approx([3.0, -2e-3, 0.0])
 
 
 # -- Design choice
@@ -305,9 +357,13 @@ def curve(npv: list[float | None], flat: tuple[float, float] | None) -> Curve:
         (
             [80e3, 150e3, 100e3, 90e3],
             (1.9, 2.1),
-            "2.0 K instead of 3.0 K would add 50 thousand EUR; from 1.9",
+            "2.0 K instead of 3.0 K would add 50 thousand EUR before costs; from 1.9",
         ),
-        ([150e3, 120e3, 100e3], (1.0, 1.1), "That is the last value that was tried or can be built"),
+        (
+            [150e3, 120e3, 100e3],
+            (1.0, 1.1),
+            "before costs, and more may lie beyond that last value that was tried or can be built",
+        ),
         ([80e3, 100.5e3, 100e3], None, "nothing tried is better by more than 1 %"),
         ([-80e3, -50e3, -60e3], None, "does not pay at any value tried; 2.0 K loses least"),
         ([None, None], None, "none of the values can be built"),
@@ -317,7 +373,7 @@ def test_a_curve_is_read_for_the_option_as_stated(
     npv: list[float | None], flat: tuple[float, float] | None, said: str
 ) -> None:
     stated = STATED if npv[0] is None or npv[0] > 0 else replace(STATED, npv=-60e3)
-    assert said in curve_words(curve(npv, flat), stated, "EUR")
+    assert said in curve_words(curve(npv, flat), stated, "EUR", " before costs")
 
 
 def item(name: str, basis: str, size: tuple[str, float] | None = None) -> ItemCost:
@@ -336,8 +392,13 @@ def test_costs_that_do_not_follow_the_size_are_named() -> None:
     both = cost_words(of(tail, shell, share))
     assert "by correlation: Shell; shares of other items move with those: Setting" in both
     assert "whatever its size: Tail." in both
-    assert surface_words(of(shell)) == ""
-    assert "before its price" in surface_words(of(tail, replace(shell, stage=2)))
+    assert caveat_of("existing_area_factor", of(shell)) == caveat_of("shares", of(shell, share)) == ""
+    later = of(tail, replace(shell, stage=2))
+    assert "before the price of that surface" in caveat_of("existing_area_factor", later)
+    assert caveat_of("shares", later) == " at costs that do not all follow the size"
+    pump = replace(shell, size=("condensate_pump_kW", 5.0))
+    assert "without a cost of the route" in caveat_of("drain_route", of(shell))
+    assert caveat_of("drain_route", of(pump)) == ""
 
 
 def with_blank(study: Study) -> tuple[Study, DesignChoice]:
@@ -369,7 +430,10 @@ def test_design_choice_marks_best_and_stated_and_leaves_blank_what_cannot_be_bui
     said = text_of(sheet)
     assert "Not built at 1.0 K: too wet at the end." in said
     assert "Not built at 1: one stage has no tail section" in said
-    assert joint_words(choice, study.case.study.currency) in said
+    place = [option.key for option in study.case.options].index(choice.option)
+    caveat = caveat_of("shares", study.capital[place])
+    assert caveat
+    assert joint_words(choice, study.case.study.currency, caveat) in said
     difference, share = sheet.charts
     assert difference.series[0].values == f"C{row + 1}:M{row + 1}"
     assert difference.series[0].x == f"C{row}:M{row}"

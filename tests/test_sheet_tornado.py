@@ -10,8 +10,23 @@ from study_fixture import marrowby_study
 from appraise.case.money import Driver
 from appraise.study import Study
 from appraise.workbook.cells import ref
-from appraise.workbook.tornado import DRIVER, HOW, PLACE, REASON, SWING, TITLE, TOP, tornado_sheet
-from appraise.workbook.tornado_bars import AT
+from appraise.workbook.tornado import (
+    DRIVER,
+    FOULED,
+    HIGH,
+    HOW,
+    LOW,
+    NOW,
+    PLACE,
+    REASON,
+    SWING,
+    TITLE,
+    TOP,
+    UNIT,
+    direction_words,
+    tornado_sheet,
+)
+from appraise.workbook.tornado_bars import AT, NO_EFFECT
 from appraise.workbook.tornado_drivers import live_bar, shown
 
 pytestmark = pytest.mark.filterwarnings("ignore:Unable to read chart:UserWarning")
@@ -67,6 +82,12 @@ def test_the_table_is_sorted_by_swing_and_says_why_an_end_has_no_value() -> None
     assert sorted(int(str(cells[ref(row, PLACE)])) for row in rows) == list(range(1, len(bars) + 1))
     reasons = {cells[ref(row, DRIVER)]: cells[ref(row, REASON)] for row in rows}
     assert "tax_rate" in str(reasons["Impossible tax"])
+    assert reasons["Nothing"] == NO_EFFECT
+    texts = {
+        cells[ref(row, DRIVER)]: [cells[ref(row, col)] for col in (UNIT, NOW, LOW, HIGH)] for row in rows
+    }
+    assert texts["Rate"] == ["%", "7 %", "−20 % of it", "10 %"]
+    assert texts["Capital"] == ["times", "1.1", "0.9", "+30 %"]
     assert not reasons["Power"]
     order = [bar["driver"] for bar in sorted(bars, key=lambda bar: int(str(bar["rank"])))]
     assert [cells[ref(row, DRIVER)] for row in rows] == order
@@ -84,6 +105,17 @@ def test_which_bars_of_the_demo_are_live() -> None:
     assert len(sheet.charts) == len(study.tornado)
 
 
+def test_a_driver_that_seems_to_work_the_wrong_way_is_explained() -> None:
+    study = marrowby_study()
+    said = direction_words(study)
+    fouled = [[bar for bar in one.bars if bar.path == FOULED] for one in study.tornado]
+    assert all(bar.npv_high > bar.npv_low for bars in fouled for bar in bars)  # type: ignore[operator]
+    assert "because the plant it is compared with is worse" in said
+    assert all(f"“{option.name}”" in said for option in study.case.options if not option.baseline)
+    turned = replace(fouled[0][0], npv_low=2.0, npv_high=1.0)
+    assert direction_words(replace(study, tornado=(replace(study.tornado[0], bars=(turned,)),))) == ""
+
+
 @pytest.mark.parametrize(
     ("floor", "low", "way"),
     [
@@ -99,6 +131,17 @@ def test_a_price_that_decides_hours_is_as_run(floor: float | None, low: float | 
     study = with_floor(cached_small_study(), floor)
     driver = Driver(label="Power", path="scenario.power", low=low, high="+20%")
     assert live_bar(study, 1, driver, study.tornado[0].bars[0]).way == way
+
+
+def test_a_whole_path_moved_by_shares_may_be_as_run() -> None:
+    """A path that changes over the years is no one number that a share could multiply."""
+    study = with_floor(cached_small_study(), 20.0)
+    sheet = tornado_sheet(study)
+    (row,) = [
+        row for (row, col), cell in sheet.cells.items() if (col, cell.value) == (AT["driver"], "Power")
+    ][1:]
+    assert sheet.cells[row, AT["how"]].value == "as run"
+    assert sheet.cells[row, AT["low_text"]].value == "−20 %"
 
 
 def with_floor(study: Study, floor: float | None) -> Study:

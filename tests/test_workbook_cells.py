@@ -21,6 +21,7 @@ from appraise.workbook.cells import (
 from appraise.workbook.charts import Series, line_chart
 from appraise.workbook.faults import check, faults_of, formula_faults
 from appraise.workbook.looks import LEGEND, STYLES, is_input
+from appraise.workbook.values import quoted_text
 
 
 def one_cell(formula: str) -> Sheet:
@@ -239,6 +240,27 @@ def test_quoted_text_stays_one_constant() -> None:
     assert quoted("_x0041_") == '"_"&"x0041_"'
     with pytest.raises(SheetFault, match="255 are allowed"):
         quoted("x" * 256)
+
+
+def test_a_text_of_any_length_is_quoted_in_pieces() -> None:
+    assert quoted_text("") == '""'
+    text = 'say "a" ' * 100
+    pieces = quoted_text(text).split('"&"')
+    assert len(pieces) > 3
+    assert max(len(piece) for piece in pieces) <= 255
+    assert "".join(pieces)[1:-1].replace('""', '"') == text
+    assert list(formula_faults("=" + quoted_text(text), set(), frozenset())) == []
+
+
+def test_a_paragraph_may_be_a_formula_and_is_as_high_as_its_words() -> None:
+    page, words = Page("Words"), "many words " * 40
+    page.width([20, 20])
+    page.paragraph(1, 1, 2, words)
+    page.paragraph(2, 1, 2, words, formula="=A9")
+    sheet = page.finish()
+    assert sheet.heights[1] == sheet.heights[2] > 60.0
+    assert (sheet.cells[2, 1].formula, sheet.cells[2, 1].value) == ("=A9", words)
+    assert sheet.merges == ("A1:B1", "A2:B2")
 
 
 def test_rows_carry_label_unit_and_one_formula() -> None:

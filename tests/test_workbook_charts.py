@@ -11,6 +11,7 @@ from defusedxml.ElementTree import fromstring
 
 from appraise.workbook.cells import Page, Sheet, SheetFault
 from appraise.workbook.charts import (
+    HATCHED_SLOT,
     Axis,
     Chart,
     Series,
@@ -170,6 +171,15 @@ def vals_of_dash(series: Sequence[Element]) -> list[str | None]:
 def test_negative_bars_keep_their_fill() -> None:
     for kind in ("clustered", "stacked", "tornado"):
         assert vals(xml_of(CHARTS[kind]), "ser/invertIfNegative") == ["0", "0"]
+
+
+def test_the_ends_of_a_driver_are_one_hue_full_and_hatched() -> None:
+    low, high = replace(FIRST, slot=HATCHED_SLOT), replace(SECOND, slot=0)
+    chart = xml_of(tornado_chart("T", low, high, YEARS, y="y", **AT))
+    hatched, full = chart.iter(C + "ser")
+    (pattern,), (fill,) = hatched.iter(A + "pattFill"), full.findall(f"{C}spPr/{A}solidFill/{A}srgbClr")
+    assert [one.get("val") for one in pattern.findall(f"{A}fgClr/{A}srgbClr")] == [fill.get("val")]
+    assert list(full.iter(A + "pattFill")) == []
 
 
 def test_tornado_has_its_first_bar_on_top_and_its_scale_below() -> None:

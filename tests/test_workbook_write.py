@@ -16,7 +16,7 @@ from openpyxl.utils.escape import unescape
 
 from appraise.workbook.cells import Page, Sheet, SheetFault, quoted
 from appraise.workbook.charts import Series, bar_chart
-from appraise.workbook.pack import with_descriptions, with_values
+from appraise.workbook.pack import maker, with_descriptions, with_values
 from appraise.workbook.values import header_text, stored_text
 from appraise.workbook.write import book_bytes
 from tests.libreoffice import differences, needs_libreoffice, recalculate, values_in
@@ -124,6 +124,14 @@ def test_a_chart_left_without_description_is_refused() -> None:
 def test_the_same_sheets_give_the_same_bytes() -> None:
     assert written(sample()) == written(sample())
     assert written(sample()) != written(sample(growth=0.03))
+
+
+def test_the_file_names_its_maker() -> None:
+    told = parts_of(written(sample()))["docProps/app.xml"].decode()
+    assert "<Application>appraise</Application>" in told
+    (version,) = re.findall("<AppVersion>([^<]*)</AppVersion>", told)
+    assert re.fullmatch(r"\d{1,2}\.\d{4}", version)  # as the format demands
+    assert maker("1.2.3") == b"<Application>appraise</Application><AppVersion>1.0203</AppVersion>"
 
 
 def test_bytes_depend_neither_on_the_clock_nor_on_the_order_of_hashes() -> None:

@@ -26,9 +26,10 @@ if TYPE_CHECKING:
 TITLE = "Break-even"
 NOTE = (
     "A price path is moved as a whole; its first year, in money of the price year, stands for it. Hours, "
-    "bypassed hours, premium, fee and loss by the tie-in stay as they are. Grids in thousands of {currency}: "
-    "red with a minus, it does not pay; filled, it pays here and no longer one step further, so the filled "
-    "cells trace the line where the net present value is zero; large, the prices as stated."
+    "bypassed hours, premium, fee and loss by the tie-in stay as they are. Money in thousand {currency}, "
+    "cells hold {currency}. Grids: red with a minus, it does not pay; filled, it pays here and no longer one "
+    "step further, so the filled cells trace the line where the net present value is zero; large, the prices "
+    "as stated."
 )
 SUMMARY_TOP = 6
 STATED_ROW = SUMMARY_TOP + 2
@@ -71,8 +72,8 @@ def _summary(study: Study, page: Page) -> int:
         f"power price {currency}/MWh",
         f"fuel price {currency}/MWh",
         f"carbon price {currency}/t",
-        f"largest capital {money}",
-        f"its capital {money}",
+        f"largest capital, {money}",
+        f"its capital, {money}",
     )
     page.headings(SUMMARY_TOP + 1, ["Option", "", *heads])
     page.height(SUMMARY_TOP + 1, 56)

@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, fields
+
+from appraise.workbook.cells import TOTAL, Page
 
 CASH_FLOW = "Cash flow"
 
@@ -36,3 +39,30 @@ ROWS = CalendarRows(
     **{field.name: CALENDAR_TOP + offset for offset, field in enumerate(fields(CalendarRows), 1)}
 )
 BLOCKS_TOP = ROWS.single + 13
+
+
+def put_calendar(
+    page: Page,
+    row: int,
+    label: str,
+    text: Callable[[str], str],
+    years: Sequence[int],
+    total: str,
+    name: str = "",
+) -> None:
+    """The heading of a block over t: its label, "unit", what stands in the column of totals, calendar years.
+
+    text : formula of a year, by the letters of its column
+    """
+    page.row_of_formulas(
+        row,
+        label,
+        "unit",
+        text,
+        years,
+        "year heading",
+        label_style="heading_left",
+        unit_style="heading",
+        name=name,
+    )
+    page.put(row, TOTAL, total, "heading")

@@ -1,7 +1,7 @@
 """The detail behind the capital: how an item becomes money of the price year, and every option's items.
 
 One table says for each item by which factors its money is multiplied; below it, one block for each option
-multiplies what is bought. A quotation and a share are live; what a correlation came to is of the run, and
+multiplies what is bought. An amount given and a share are live; what a correlation came to is of the run, and
 only its index, exchange and location are live.
 """
 
@@ -55,6 +55,10 @@ BLOCK_HEADINGS = (
     "high end",
     "how it came about",
 )
+
+
+BASIS_WORDS = {"quotation": "amount given"}
+"""What an item rests on, where the program's own word would say more than is known."""
 
 
 def item_name(key: str, part: str) -> str:
@@ -118,7 +122,7 @@ def put_factors(page: Page, case: Case, capital: Sequence[OptionCapital], rows: 
     for item in rows.items:
         row, cost = rows.factors(item.key), costs[item.key]
         page.put(row, ITEM, item.name, "label")
-        page.put(row, BASIS, cost.basis, "unit")
+        page.put(row, BASIS, BASIS_WORDS.get(cost.basis, cost.basis), "unit")
         if cost.basis != "share":
             _put_money(page, case, item, cost, rows)
         for col, part, value in ((BAND_LOW, "low", item.low), (BAND_HIGH, "high", item.high)):
@@ -230,7 +234,7 @@ def _put_item(
     """One item: cost of one in its own money × factors × number, or a share of other items."""
     stage = "" if cost.stage is None else f", stage {cost.stage}"
     page.put(row, ITEM, item.name + stage, "label")
-    page.put(row, BASIS, cost.basis, "unit")
+    page.put(row, BASIS, BASIS_WORDS.get(cost.basis, cost.basis), "unit")
     factors = rows.factors(item.key)
     if cost.basis == "share":
         page.formula(row, COST, f"={item_name(item.key, 'share')}", item.share, "percent1")
@@ -254,7 +258,7 @@ def _put_item(
     for col, band, value in ((LOW, BAND_LOW, cost.low), (HIGH, BAND_HIGH, cost.high)):
         text = f"={ref(row, AMOUNT)}*(1+{ref(factors, band, True)})"
         page.formula(row, col, text, value, "money")
-    page.put(row, HOW, _how(item, cost), "label_indent")
+    page.paragraph(row, HOW, LAST, _how(item, cost, rows), "note_wrap_indent")
 
 
 def _put_cost_of_one(page: Page, item: CapexItem, cost: ItemCost, row: int) -> None:
@@ -284,11 +288,13 @@ def _of(places: dict[str, tuple[int, int]], keys: Sequence[str]) -> list[tuple[i
     return joined
 
 
-def _how(item: CapexItem, cost: ItemCost) -> str:
+def _how(item: CapexItem, cost: ItemCost, rows: Rows) -> str:
     """What was bought, in words."""
     if cost.basis == "share":
+        names = {one.key: one.name for one in rows.items}
         everything = item.share_of == ("all",)
-        return f"share of {'all without shares' if everything else ', '.join(item.share_of or ())}"
+        listed = ", ".join(names.get(key, key) for key in item.share_of or ())
+        return f"share of {'all that are no shares' if everything else listed}"
     parts = [cost.note] if cost.units == 0 and cost.note else []
     if cost.size is not None and cost.units:
         name, value = cost.size

@@ -27,6 +27,7 @@ if TYPE_CHECKING:
 
 
 LEAST_CHART_COLUMNS = 8
+LOSSES = "Losses are credited at once: the owner is taken to have other taxable profit."
 
 
 def cash_flow_sheet(study: Study) -> Sheet:
@@ -37,11 +38,12 @@ def cash_flow_sheet(study: Study) -> Sheet:
         f"{basis}, money of {study.case.study.price_year}" if basis == "real" else "nominal, money of the day"
     )
     currency = study.case.study.currency
-    shown = f"Money is shown in thousands; the cells hold {currency}."
+    shown = f"Money in thousand {currency}, cells hold {currency}."
     page.head("Cash flow and measures", f"As run: {money}. {shown}")
+    page.put(3, LABEL, LOSSES, "note")
     calendar = Calendar(study, page)
     width = _width(study)
-    page.width([42, 9, max(12.8, width + 2.0)] + [width] * calendar.time.number)
+    page.width([42, 12.5, max(12.8, width + 2.0)] + [width] * calendar.time.number)
     end = BLOCKS_TOP + HEIGHT * (len(study.case.options) - 1)
     for row in range(MEASURES_TOP, end):
         page.height(row, ROW_POINTS)

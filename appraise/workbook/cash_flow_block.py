@@ -9,7 +9,7 @@ import numpy as np
 
 from appraise.cash_flow import LINE_NAMES, present_value
 from appraise.numerics import Array
-from appraise.workbook.calendar_rows import ROWS
+from appraise.workbook.calendar_rows import ROWS, put_calendar
 from appraise.workbook.cash_flow_calendar import TAX_LEFT
 from appraise.workbook.cells import LABEL, TOTAL, Page, column, sheet_prefix, year_column
 from appraise.workbook.naming import Timeline, name_of
@@ -55,6 +55,7 @@ class Block:
     def __init__(self, study: Study, page: Page, option: int, top: int, marks: int) -> None:
         self.study, self.page, self.option, self.top = study, page, option, top
         self.case, self.time = study.case, Timeline.of(study.case)
+        self.unit = f"thousand {study.case.study.currency}"
         self.key, self.name = study.case.options[option].key, study.case.options[option].name
         self.flow = study.runs[study.reference].flows[option]
         self.energy_row = top + 2
@@ -111,17 +112,14 @@ class Block:
     def _heading(self) -> None:
         page, top = self.page, self.top
         page.put(top, LABEL, f"{self.name} against the baseline, chosen scenario", "section")
-        page.row_of_formulas(
+        put_calendar(
+            page,
             top + 1,
             "Money in +, money out −; in thousands",
-            "unit",
             lambda c: f"={c}${ROWS.calendar_year}",
             self.time.calendar,
-            "year heading",
-            label_style="heading_left",
-            unit_style="heading",
+            "present value (MWh: sum)",
         )
-        page.put(top + 1, TOTAL, "present value (MWh: sum)", "heading")
         page.height(top + 1, 28)
 
     def _energies(self) -> None:
@@ -176,13 +174,13 @@ class Block:
         }[name]
 
     def _lines(self) -> None:
-        flow, currency = self.flow, self.case.study.currency
+        flow = self.flow
         for name, label in zip(LINE_NAMES, LINE_LABELS, strict=True):
             row, values = self.line(name), getattr(flow.lines, name)
             self.row(
                 row,
                 label,
-                currency,
+                self.unit,
                 lambda c, name=name: self._line_formula(name, c),  # type: ignore[misc]
                 values,
                 name=name_of("line", name, self.key),
@@ -194,12 +192,12 @@ class Block:
         return f"=SUMPRODUCT({self.time.row(row)},discount_factor)"
 
     def _sums(self) -> None:
-        flow, currency, first = self.flow, self.case.study.currency, self.line_row
+        flow, first = self.flow, self.line_row
         last = self.line("tax")
         self.row(
             self.net,
             "Net flow",
-            currency,
+            self.unit,
             lambda c: f"=SUM({c}{first}:{c}{last})",
             flow.net,
             style="thousand total",
@@ -222,7 +220,7 @@ class Block:
             self.row(
                 row,
                 label,
-                currency,
+                self.unit,
                 lambda c, source=source: f"=SUM(${self.years[0]}{source}:{c}{source})",  # type: ignore[misc]
                 values,
                 name=name_of(name, self.key),
@@ -230,7 +228,7 @@ class Block:
         self.row(
             self.discounted,
             "Net flow, discounted",
-            currency,
+            self.unit,
             lambda c: f"={c}{self.net}*{c}${ROWS.discount_factor}",
             flow.discounted,
             name=name_of("discounted", self.key),
@@ -240,12 +238,12 @@ class Block:
 
     def _taxed(self) -> None:
         """Depreciation and taxable income, money of the day; what prices do not touch."""
-        flow, currency, time, page = self.flow, self.case.study.currency, self.time, self.page
+        flow, time, page = self.flow, self.time, self.page
         spent = -float(flow.day_lines.capital.sum())
         granted = float(flow.day_lines.grant.sum()) if self.case.finance.grant_reduces_depreciation else 0.0
         capital, grant = time.row(self.line("capital")), time.row(self.line("grant"))
         page.put(self.book, LABEL, "Book value depreciated, money of the day")
-        page.put(self.book, TOTAL - 1, currency, "unit")
+        page.put(self.book, TOTAL - 1, self.unit, "unit")
         page.formula(
             self.book,
             TOTAL,
@@ -256,7 +254,7 @@ class Block:
         self.row(
             self.depreciation,
             "Depreciation, money of the day",
-            currency,
+            self.unit,
             lambda c: f"=$C${self.book}*{c}${ROWS.depreciation_share}",
             flow.depreciation,
         )
@@ -264,13 +262,13 @@ class Block:
         self.row(
             self.taxable,
             "Taxable income, money of the day",
-            currency,
+            self.unit,
             lambda c: f"=SUM({c}{first}:{c}{last})/{c}${ROWS.deflator}-{c}{self.depreciation}",
             flow.taxable,
             name=name_of("taxable", self.key),
         )
         page.put(self.fixed_value, LABEL, "Present value after tax, no price in it")
-        page.put(self.fixed_value, TOTAL - 1, currency, "unit")
+        page.put(self.fixed_value, TOTAL - 1, self.unit, "unit")
         page.formula(
             self.fixed_value,
             TOTAL,

@@ -11,7 +11,7 @@ from appraise.cash_flow import CashFlow
 from appraise.measures import ROUNDING
 from appraise.numerics import Array
 from appraise.prices import compounded
-from appraise.workbook.calendar_rows import CALENDAR_TOP, ROWS
+from appraise.workbook.calendar_rows import CALENDAR_TOP, ROWS, put_calendar
 from appraise.workbook.cells import LABEL, TOTAL, UNIT, YEAR_ZERO, Page
 from appraise.workbook.naming import Timeline, input_name
 
@@ -55,18 +55,15 @@ class Calendar:
     def _years(self) -> None:
         page, time = self.page, self.time
         page.put(CALENDAR_TOP, LABEL, "Calendar and what all options share", "section")
-        page.row_of_formulas(
+        put_calendar(
+            page,
             ROWS.calendar_year,
             "Calendar year",
-            "unit",
             lambda c: f"=in_study_first_year-spend_years+{c}{ROWS.t_index}",
             time.calendar,
-            "year heading",
-            label_style="heading_left",
-            unit_style="heading",
-            name="calendar_year",
+            "total",
+            "calendar_year",
         )
-        page.put(ROWS.calendar_year, TOTAL, "total", "heading")
         page.row_of(
             ROWS.t_index,
             "t, years since the first spend",
@@ -206,7 +203,7 @@ class Calendar:
         self.row(
             r.overhauls,
             "Overhauls, before growth",
-            self.case.study.currency,
+            f"thousand {self.case.study.currency}",
             lambda c: f"={c}{r.operating}*({due.format(k=f'{c}{r.operating_year}')})",
             self.time.operating(amounts),
             "thousand",

@@ -44,6 +44,7 @@ class MeasuresTable:
     def __init__(self, study: Study, page: Page, blocks: Sequence[Block]) -> None:
         self.study, self.page, self.blocks = study, page, blocks
         self.currency = study.case.study.currency
+        self.money = f"thousand {self.currency}"
 
     def write(self) -> int:
         """The table; returns the first free row."""
@@ -103,7 +104,7 @@ class MeasuresTable:
         rate = run.irr if run.irr is not None and run.irr > LOWEST_RATE else None
         spent = f"(C{block.line('capital')}+C{block.line('grant')})"
         return [
-            _Measure("npv", "Net present value", self.currency, "thousand bold", f"=C{block.net}", run.npv),
+            _Measure("npv", "Net present value", self.money, "thousand bold", f"=C{block.net}", run.npv),
             _Measure(
                 "irr",
                 "Internal rate of return, above −50 %",
@@ -234,7 +235,7 @@ class MeasuresTable:
             _Measure(
                 "extra_capital",
                 "Capital above the baseline's, price-year money",
-                self.currency,
+                self.money,
                 "thousand",
                 f"={increment}",
                 float(block.flow.capital),
@@ -242,7 +243,7 @@ class MeasuresTable:
             _Measure(
                 "largest_capital",
                 "Largest capital of the option without a loss",
-                self.currency,
+                self.money,
                 "thousand",
                 f'=IF(OR(SUMPRODUCT(ABS({net}))=0,unit_of_capital>=0),"{NOTHING}",{total}-{npv}/unit_of_capital)',
                 NOTHING if run.largest_capex is None else run.largest_capex,
@@ -250,7 +251,7 @@ class MeasuresTable:
             _Measure(
                 "first_gain",
                 "Gain of the first year, before tax",
-                self.currency,
+                self.money,
                 "thousand",
                 f"=SUM(INDEX({lines},0,spend_years+1))",
                 gain,

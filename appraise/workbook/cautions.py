@@ -11,6 +11,7 @@ from math import ceil
 
 from appraise.checks import MOISTURE_LIMIT
 from appraise.study import Study
+from appraise.workbook.cash_flow import LOSSES
 from appraise.workbook.cells import Page, Sheet
 from appraise.workbook.side_by_side import LINE_POINTS
 
@@ -95,7 +96,12 @@ def _grounds(study: Study) -> Iterator[str]:
     )
     yield (
         "Capital rests on the sources beside each item; a published correlation is a screening figure and a "
-        "quotation always wins. Low and high totals are straight sums, wider than the likely spread."
+        "quotation always wins. Low and high totals are straight sums: wider than the likely spread if the "
+        "errors of the items are independent of each other, and only then."
+    )
+    yield (
+        f"Tax is that of the stated rate on the stated depreciation. {LOSSES} A stand-alone company would "
+        "carry them forward, which is worth less."
     )
 
 
@@ -110,14 +116,18 @@ def _left_out(study: Study) -> Iterator[str]:
         "margins and the wear of blades. The network is not modelled: its temperatures are given."
     )
     if not any(option.bypass for option in study.case.options):
-        yield "No option may be bypassed in hours of low power price; a bypass could only add margin."
+        yield (
+            "No option may be bypassed in hours of low power price; a bypass could only add margin, before "
+            "its own cost."
+        )
 
 
 def _turbine() -> list[str]:
     return [
         f"Blading, moisture in the last rows (above {MOISTURE_LIMIT:.0%} is warned of), thrust balance, "
         "critical speeds, and overspeed from the steam stored in a larger exhaust volume need the maker of "
-        "the turbine. Fast non-return valves and the loss of island running belong to the same talk.",
+        "the turbine. Fast non-return valves, load rejection and island operation are for the same "
+        "discussion.",
         "Useful in a specification: IEC 60045-1:2020 (steam turbines), EN 45510-5-1:1998 (procurement), "
         "IEC 60953-3:2022 (acceptance tests of retrofitted turbines, where turbine hardware changes).",
     ]

@@ -193,19 +193,25 @@ class Page:
         return row + len(LEGEND)
 
     def paragraph(
-        self, row: int, col: int, last_col: int, text: str, style: str = "text_wrap", least_lines: int = 1
+        self,
+        row: int,
+        col: int,
+        last_col: int,
+        text: str,
+        style: str = "text_wrap",
+        least_lines: int = 1,
+        formula: str = "",
     ) -> None:
-        """Text that wraps over merged columns, with the height it needs; set the widths before."""
+        """Text, or what `formula` comes to, that wraps over merged columns; set the widths before."""
         points = STYLES[style].points if style in STYLES else 0.0
         width = sum(self._widths.get(c, DEFAULT_WIDTH) for c in range(col, last_col + 1))
         per_line = max(1.0, width * WIDTH_POINTS / max(points, 1.0))
         lines = sum(max(1, ceil(len(line) / per_line)) for line in text.split("\n"))
-        self.put(row, col, text, style)
+        self.formula(row, col, formula, text, style) if formula else self.put(row, col, text, style)
         if last_col > col:
             self.merge(row, col, row, last_col)
-        self.height(
-            row, max(self._heights.get(row, 0.0), max(lines, least_lines) * points * LINE_SPACING + 2)
-        )
+        needed = max(lines, least_lines) * points * LINE_SPACING + 2
+        self.height(row, max(self._heights.get(row, 0.0), needed))
 
     # -- looks and print
 

@@ -14,6 +14,7 @@ from appraise.workbook.values import SheetFault
 Kind = Literal["line", "scatter", "bar", "tornado", "duration"]
 
 SIZE_CM = (17.0, 8.5)
+HATCHED_SLOT = 6  # the colour of the first series, hatched: the other end of the same thing
 
 
 @dataclass(frozen=True, slots=True)

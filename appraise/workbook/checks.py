@@ -12,9 +12,36 @@ from appraise.workbook.side_by_side import LINE_POINTS, residual
 
 TITLE = "Checks"
 OK, LOOK = "OK", "LOOK"
-WIDTHS = (54.0, 10.0, 11.0, 11.0, 2.0, 96.0)
-_HEADS = ("Check", "Result", "Value", "Limit", "", "What it says")
+CHECK, RESULT, UNIT, VALUE, LIMIT, OVER, _, SAYS = range(1, 9)
+WIDTHS = (54.0, 10.0, 7.0, 11.0, 11.0, 11.0, 2.0, 98.0)
+_HEADS = ("Check", "Result", "unit", "Value", "Limit", "over the limit by", "", "What it says")
 FIRST_ROW = 9
+# Of what is checked, by how its name begins.
+UNITS = {
+    "draws": "%",
+    "moisture": "%",
+    "drain into": "K",
+    "existing exhaust": "m³/s",
+    "existing condenser": "MW",
+    "live steam at": "kg/s",
+    "heat at": "MW",
+    "hours": "h",
+    "comparison with meters": "%",
+    "live steam of the steady test": "%",
+    "closure": "–",
+    "lines sum": "–",
+    "net present value": "–",
+    "value left": "–",
+}
+# What a check says, and how a reader of this sheet, with its unit beside it, hears it better.
+_PLAINER = (
+    ("existing exhaust", "greatest flow or duty, m³/s,", "greatest volume flow through the exhaust,"),
+    ("existing condenser", "greatest flow or duty, MW,", "greatest duty of the condenser,"),
+    ("drain into", "provide for it", "size nozzle and vent for flash steam"),
+    ("drain into", "colder shell, K:", "colder shell:"),
+    ("live steam at", "kg/s; ", ""),
+    ("heat at", "MW, ", ""),
+)
 
 
 def checks_sheet(study: Study) -> Sheet:
@@ -26,7 +53,7 @@ def checks_sheet(study: Study) -> Sheet:
         "LOOK is no error of the study: it is news about the plant or the data that someone must judge.",
     )
     ordered = sorted(study.checks, key=lambda check: check.passed)
-    results = area(FIRST_ROW, 2, FIRST_ROW + len(ordered) - 1, 2, absolute=True)
+    results = area(FIRST_ROW, RESULT, FIRST_ROW + len(ordered) - 1, RESULT, absolute=True)
     good = sum(check.passed for check in ordered)
     page.put(4, 1, "Checks in order", "label")
     page.formula(4, 2, f'=COUNTIF({results},"{OK}")', expect=good, style="integer bold", name="checks_passed")
@@ -42,6 +69,7 @@ def checks_sheet(study: Study) -> Sheet:
         name="checks_overall",
     )
     page.headings(FIRST_ROW - 1, _HEADS)
+    page.height(FIRST_ROW - 1, 30)
     for row, check in enumerate(ordered, FIRST_ROW):
         _check_row(page, row, check, title_of(study.case, check))
     for cells in (results.replace("$", ""), "B6"):
@@ -66,23 +94,55 @@ def title_of(case: Case, check: Check) -> str:
 
 
 def _check_row(page: Page, row: int, check: Check, title: str) -> None:
-    one_line = _lines(title, WIDTHS[0]) == _lines(check.message, WIDTHS[5]) == 1
-    page.put(row, 1, title, "label" if one_line else "label_wrap")
-    page.put(row, 2, OK if check.passed else LOOK, "text_centre")
-    for col, value in ((3, check.value), (4, check.limit)):
+    unit, message = unit_of(check), _sentence(plainer(check))
+    page.put(row, CHECK, title, "label_wrap")
+    page.put(row, RESULT, OK if check.passed else LOOK, "text_centre")
+    page.put(row, UNIT, unit, "unit")
+    for col, value in ((VALUE, check.value), (LIMIT, check.limit)):
         if value is None:
             page.put(row, col, "–", "text_right as run")
         else:
-            kind = kind_of(value)
+            kind = kind_of(value, unit)
             page.put(row, col, residual(value) if kind == "tiny" else value, f"{kind} as run")
-    page.put(row, 6, _sentence(check.message), "text" if one_line else "text_wrap")
-    lines = max(_lines(title, WIDTHS[0]), _lines(check.message, WIDTHS[5]))
+    page.put(row, OVER, over(check, unit), "text_right as run")
+    page.put(row, SAYS, message, "text_wrap")
+    lines = max(_lines(title, WIDTHS[CHECK - 1]), _lines(message, WIDTHS[SAYS - 1]))
     page.height(row, lines * LINE_POINTS + 3.0)
 
 
-def kind_of(value: float) -> str:
+def unit_of(check: Check) -> str:
+    """Unit of value and limit, "" where there is none or it is not known."""
+    if check.value is None:
+        return ""
+    found = [name for name in UNITS if check.name.startswith(name)]
+    return UNITS[max(found, key=len)] if found else ""
+
+
+def plainer(check: Check) -> str:
+    """What a check says, in the words of this sheet."""
+    message = check.message
+    for name, said, better in _PLAINER:
+        if check.name.startswith(name):
+            message = message.replace(said, better)
+    return message
+
+
+def over(check: Check, unit: str) -> str:
+    """By how much a limit is exceeded: a share of it, of a limit of 0 the amount; "" where none is."""
+    value, limit = check.value, check.limit
+    if check.passed or value is None or limit is None or value <= limit:
+        return ""
+    if limit == 0.0:
+        return f"{value:,.3g} {unit}".rstrip()
+    share = 100.0 * (value / limit - 1.0)
+    return f"{share:,.0f} %" if share >= 10.0 else f"{share:.2g} %"
+
+
+def kind_of(value: float, unit: str = "") -> str:
     """Kind of number that shows a value of any size readably."""
     size = abs(value)
+    if unit == "%":
+        return "percent1"
     if value == int(value):
         return "integer"
     if size < 1e-3:

@@ -10,10 +10,10 @@ from appraise.workbook.cells import LABEL, TOTAL, UNIT, Page, Sheet, area, ref
 from appraise.workbook.charts import Axis, Series, scatter_chart
 from appraise.workbook.design_words import (
     Stated,
+    caveat_of,
     cost_words,
     curve_words,
     joint_words,
-    surface_words,
     value_words,
 )
 from appraise.workbook.looks import REDUCED_CHART_POINTS
@@ -82,21 +82,21 @@ class _Choice:
         self.row += 1
 
     def _words(self) -> None:
-        scenarios = list(self.case.scenarios)
+        scenarios, capital = list(self.case.scenarios), self.study.capital[self.place]
         title = self.study.runs[scenarios.index(self.choice.scenario)].prices.title
         self._paragraph(
-            f"One key of the option is changed at a time, the others stay as stated; it is sized, costed and "
-            f"run through the year again, in the scenario {title}. Flat: as far as the value may move before "
-            "the net present value is 1 % below the best, by a smooth curve through the points.",
+            "One value of the option is changed at a time, the others stay as stated; it is sized, costed "
+            f"and run through the year again, in the scenario {title}. Flat: as far as the value may move "
+            "before the net present value is 1 % below the best, by a smooth curve through the points. The "
+            f"gains do not add up. Money in thousand {self.currency}, cells hold {self.currency}.",
             "note_wrap",
         )
         for curve in self.choice.curves:
-            words = curve_words(curve, self.stated, self.currency)
-            if curve.key == "existing_area_factor":
-                words = f"{words} {surface_words(self.study.capital[self.place])}".rstrip()
+            words = curve_words(curve, self.stated, self.currency, caveat_of(curve.key, capital))
             self._paragraph(words, "text_wrap bold")
-        self._paragraph(joint_words(self.choice, self.currency), "text_wrap bold")
-        self._paragraph(cost_words(self.study.capital[self.place]), "text_wrap")
+        words = joint_words(self.choice, self.currency, caveat_of("shares", capital))
+        self._paragraph(words, "text_wrap bold")
+        self._paragraph(cost_words(capital), "text_wrap")
         self.row += 1
 
     def _summary(self) -> None:
@@ -104,7 +104,17 @@ class _Choice:
         self._section(f"As stated and best; NPV: net present value, {money}")
         page.headings(
             self.row,
-            ["Key", "unit", "as stated", "its NPV", "best tried", "its NPV", "gain", "flat from", "flat to"],
+            [
+                "Value",
+                "unit",
+                "as stated",
+                "its NPV",
+                "best tried",
+                "its NPV",
+                "gain",
+                "flat from",
+                "flat to",
+            ],
         )
         for curve in self.choice.curves:
             self.row += 1

@@ -50,8 +50,8 @@ def value_words(key: str, value: Value) -> str:
     return f"{value:.2f} times" if key == "existing_area_factor" else f"{value:g}"
 
 
-def curve_words(curve: Curve, stated: Stated, currency: str) -> str:
-    """What a curve means for the option as stated."""
+def curve_words(curve: Curve, stated: Stated, currency: str, caveat: str = "") -> str:
+    """What a curve means for the option as stated; `caveat` goes with every gain."""
     now = value_words(curve.key, stated.value(curve.key))
     if curve.best is None or curve.best_npv is None:
         return f"{curve.label}: none of the values can be built."
@@ -67,35 +67,41 @@ def curve_words(curve: Curve, stated: Stated, currency: str) -> str:
         return (
             f"{curve.label}: as stated ({now}) it is on the flat top of the curve, {ends}: nothing to gain."
         )
-    words = f"{curve.label}: {best} instead of {now} would add {thousands(gain, currency)}"
-    words += f"; from {ends} it makes no difference to speak of." if ends else "."
+    words = f"{curve.label}: {best} instead of {now} would add {thousands(gain, currency)}{caveat}"
     built = [value for value, npv in zip(curve.values, curve.npv, strict=True) if npv is not None]
     if len(built) > 2 and curve.best in (built[0], built[-1]):
-        words += " That is the last value that was tried or can be built: more may lie beyond."
-    return words
+        words += ", and more may lie beyond that last value that was tried or can be built"
+    return words + (f"; from {ends} it makes no difference to speak of." if ends else ".")
 
 
-def joint_words(choice: DesignChoice, currency: str) -> str:
-    """The best of terminal difference and share together."""
+def joint_words(choice: DesignChoice, currency: str, caveat: str = "") -> str:
+    """The best of terminal difference and share together; `caveat` as for a curve."""
     difference, share, npv = choice.best_difference_K, choice.best_cold_share, choice.best_joint_npv
     if difference is None or share is None or npv is None:
         return "Terminal difference and share together: none of the points can be built."
     ends = choice.joint_difference_K, choice.joint_cold_share
     at_end = difference in (ends[0][0], ends[0][-1]) or share in (ends[1][0], ends[1][-1])
-    beyond = " It lies at the edge of what was tried: more may lie beyond." if at_end else ""
+    beyond = ", at the edge of what was tried: more may lie beyond" if at_end else ""
     return (
         f"Both together: of the points tried, {difference:g} K with {share * 100.0:.0f} % of the rise in the "
-        f"cold stage is best, at {thousands(npv, currency)} against {thousands(choice.stated_npv, currency)} "
-        f"as stated.{beyond}"
+        f"cold stage is best, at {thousands(npv, currency)}{caveat}, against "
+        f"{thousands(choice.stated_npv, currency)} as stated{beyond}."
     )
 
 
-def surface_words(capital: OptionCapital) -> str:
-    """A warning where more surface on the existing condenser costs nothing, "" elsewhere."""
+def follows_all(capital: OptionCapital) -> bool:
+    """Whether every cost of an option follows its size: some by correlation, none a given amount."""
+    return bool(_names(capital, "correlation")) and not _names(capital, "quotation")
+
+
+def caveat_of(key: str, capital: OptionCapital) -> str:
+    """What a gain by this key leaves out of the costs, to stand behind its amount."""
     sizes = {item.size[0] for item in capital.items if item.size is not None and item.stage is None}
-    if sizes & {"area_m2", "condensing_area_m2"}:
-        return ""
-    return "But no cost of this option grows with that surface: the gain is before its price."
+    if key == "existing_area_factor" and not sizes & {"area_m2", "condensing_area_m2"}:
+        return " before the price of that surface, with which no cost grows"
+    if key == "drain_route" and "condensate_pump_kW" not in sizes:
+        return " without a cost of the route itself"
+    return "" if follows_all(capital) else " at costs that do not all follow the size"
 
 
 def cost_words(capital: OptionCapital) -> str:
@@ -116,7 +122,7 @@ def cost_words(capital: OptionCapital) -> str:
     if not fixed:
         return f"{words}. No item is a fixed amount."
     return (
-        f"{words}. Caution: quotations of a fixed amount stay the same at every point, whatever its size: "
+        f"{words}. Caution: amounts given stay the same at every point, whatever its size: "
         f"{', '.join(fixed)}. More stages, or larger ones, would need more than is paid for here, so the "
         "curves favour what is larger; have those items quoted again before the design is moved far."
     )

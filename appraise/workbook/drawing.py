@@ -44,7 +44,7 @@ from openpyxl.drawing.text import (
 
 from appraise.workbook.addresses import cells_in, corners, ref_to
 from appraise.workbook.cells import Sheet
-from appraise.workbook.charts import Axis, Chart, Series
+from appraise.workbook.charts import HATCHED_SLOT, Axis, Chart, Series
 from appraise.workbook.looks import FONT, GREY, SLATE, WHITE
 from appraise.workbook.values import ERROR_CODES, Value, clean_text
 
@@ -61,6 +61,7 @@ SLOTS: tuple[Slot, ...] = (
     ("7A3E78", "lgDash", "x", "smCheck"),
     ("4B6B1F", "lgDashDot", "plus", "dkVert"),
 )
+HATCHED: Slot = ("1F3A5F", "solid", "circle", "wdUpDiag")
 
 
 def native_chart(chart: Chart, sheets: Mapping[str, Sheet]) -> Any:
@@ -168,7 +169,8 @@ def _series(chart: Chart, series: Series, order: int, sheets: Mapping[str, Sheet
         elif chart.categories:
             made.cat = AxDataSource(strRef=_texts(*chart.categories, sheets))
     made.tx = _series_label(series, sheets)
-    _paint(made, chart, series, SLOTS[(series.slot if series.slot >= 0 else order) % len(SLOTS)])
+    slot = series.slot if series.slot >= 0 else order
+    _paint(made, chart, series, HATCHED if series.slot == HATCHED_SLOT else SLOTS[slot % len(SLOTS)])
     return made
 
 

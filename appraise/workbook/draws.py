@@ -23,6 +23,7 @@ from appraise.workbook.draws_charts import (
     option_charts,
 )
 from appraise.workbook.draws_figures import Figures
+from appraise.workbook.draws_leaning import below_stated, leaning_badly, lower_words
 from appraise.workbook.draws_words import (
     RANKS,
     distribution_words,
@@ -32,13 +33,14 @@ from appraise.workbook.draws_words import (
     together_words,
 )
 from appraise.workbook.input_rows import input_rows
-from appraise.workbook.tornado_drivers import value_now
+from appraise.workbook.tornado_drivers import driver_unit, value_now
 
 if TYPE_CHECKING:
     from appraise.study import Study
 
 ROW_CM = 15.0 / 72.0 * 2.54  # a row of 15 points
 OF_PATH = "× path"
+OF_DEVIATION, OF_CHECKED = "share of the standard deviation", "share of the draws checked"
 
 
 def draws_sheet(study: Study) -> Sheet | None:
@@ -113,17 +115,27 @@ class _Draws:
 
     def _words(self) -> None:
         title = self.study.runs[self.scenario].prices.title
-        self._paragraph(method_of_draws(self.risk.options[0].number, title))
+        self._paragraph(method_of_draws(self.risk.options[0].number, title, self.currency))
         for option, risk in zip(self.options, self.risk.options, strict=True):
             self._paragraph(option_words(option.name, risk, option.baseline, self.currency), "text_wrap bold")
+        stated = self.study.comparison.npv[self.scenario]
+        lower = [i for i in self.others if below_stated(self.risk.options[i], float(stated[i]))]
+        if lower:
+            first = max(lower, key=lambda i: self.risk.options[i].mean)
+            bad = leaning_badly(self.case, self.risk, self.drivers, self.risk.options[first])
+            words = lower_words([self.options[i].name for i in lower], bad)
+            if words:
+                self._paragraph(words)
         self.row += 1
 
-    def _figure(self, label: str, unit: str, kind: str, values: list[float]) -> None:
-        """A row of figures of the run."""
+    def _figure(self, label: str, unit: str, kind: str, values: list[float], of_what: str = "") -> None:
+        """A row of figures of the run, and behind them what they are a share of."""
         self.page.put(self.row, LABEL, label, "label")
         self.page.put(self.row, UNIT, unit, "unit")
         for offset, value in enumerate(values):
             self.page.put(self.row, TOTAL + offset, value, f"{kind} as run")
+        if of_what:
+            self.page.put(self.row, TOTAL + len(values), of_what, "label_indent")
         self.row += 1
 
     def _summary(self) -> None:
@@ -145,6 +157,8 @@ class _Draws:
         self._figure(
             "Chance of a positive value", "of draws", "percent1", [r.chance_npv_positive for r in risks]
         )
+        spread = [(r.chance_npv_positive * (1.0 - r.chance_npv_positive) / r.number) ** 0.5 for r in risks]
+        self._figure("  its standard error, by the number", "of draws", "percent1", spread)
         self._figure("Chance to be the best option", "of draws", "percent1", [r.chance_best for r in risks])
         self._figure("Number of draws", "–", "integer", [r.number for r in risks])
         self.row += 1
@@ -156,10 +170,10 @@ class _Draws:
         if error is None:
             return
         self._figure(
-            "Root mean square of the difference", "of deviation", "percent2", [error.root_mean_square]
+            "Root mean square of the difference", "%", "percent2", [error.root_mean_square], OF_DEVIATION
         )
-        self._figure("Largest difference", "of deviation", "percent2", [error.largest])
-        self._figure("Shift of the chance of a positive value", "of checked", "percent2", [error.shift])
+        self._figure("Largest difference", "%", "percent2", [error.largest], OF_DEVIATION)
+        self._figure("Shift of the chance of a positive value", "%", "percent2", [error.shift], OF_CHECKED)
         self._figure("Draws checked", "–", "integer", [error.checked])
         self._figure("Full solutions behind the response", "–", "integer", [error.nodes])
         self._figure("Hours of the year in each of them", "h", "integer", [error.hours])
@@ -187,22 +201,16 @@ class _Draws:
         """One line: what the case has, what was drawn, from what."""
         page, row = self.page, self.row
         scaled = Levers(self.risk.scenario).is_price_path(driver.path)
-        now = "1" if scaled else value_now(self.case, driver)
+        unit = OF_PATH if scaled else driver_unit(driver.path, self.risk.scenario, units)
+        now = "1" if scaled else value_now(self.case, driver, unit)
         page.put(row, LABEL, driver.label, "label")
-        page.put(row, UNIT, OF_PATH if scaled else self._unit(driver, units), "unit")
+        page.put(row, UNIT, unit or "–", "unit")
         page.put(row, TOTAL, now, "text_right as run")
+        kind = "percent2" if unit.startswith("%") else "number3"
         for offset, value in enumerate(np.percentile(drawn, (5, 50, 95)), 1):
-            page.put(row, TOTAL + offset, float(value), "number3 as run")
+            page.put(row, TOTAL + offset, float(value), f"{kind} as run")
         assert driver.distribution is not None
-        page.put(row, TOTAL + 4, distribution_words(driver.distribution), "label_indent")
-
-    def _unit(self, driver: Driver, units: dict[str, str]) -> str:
-        """Unit as on the Inputs sheet; shares are shown as fractions here."""
-        path = driver.path
-        if path.startswith("scenario."):
-            path = f"scenarios.{self.risk.scenario}.{path.removeprefix('scenario.')}"
-        unit = units.get(path, "")
-        return "–" if unit in ("%", "") else unit
+        page.put(row, TOTAL + 4, distribution_words(driver.distribution, unit), "label_indent")
 
     # -- one option
 

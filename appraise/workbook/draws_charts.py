@@ -75,10 +75,16 @@ def histogram(figures: Figures, number: int, row: int) -> Chart:
     """Number of draws by bins of the net present value, those below zero hatched."""
     risk, name, currency = figures.risks[number], figures.names[number], figures.currency
     edges, below, above = figures.bin_cells(number)
-    step = max(1, ceil(len(figures.bins[number].counts) / NAMED_BINS))
+    bins = figures.bins[number]
+    step = max(1, ceil(len(bins.counts) / NAMED_BINS))
+    # Where all draws lie on one side, the cells of the other are empty.
+    sides = (
+        (bins.edges[1] <= 0.0, Series("below zero", TITLE, below, slot=1)),
+        (bins.edges[-1] > 0.0, Series("zero and above", TITLE, above, slot=0)),
+    )
     chart = bar_chart(
         f"Draws by net present value; hatched: below zero, {per_cent(1.0 - risk.chance_npv_positive)}",
-        [Series("below zero", TITLE, below, slot=1), Series("zero and above", TITLE, above, slot=0)],
+        [series for there, series in sides if there],
         (TITLE, edges),
         x=Axis(f"lower edge of the bin, thousand {currency}", "General", step=float(step)),
         y=Axis("number of draws"),

@@ -4,6 +4,7 @@ design point's gain is left over the year."""
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
+from functools import partial
 
 from appraise.cycle.balance import Balance, StageBalance, State
 from appraise.study import Study
@@ -13,6 +14,7 @@ from appraise.workbook.side_by_side import (
     Line,
     group,
     heading_height,
+    line_of,
     put_line,
     put_section,
     put_table,
@@ -27,10 +29,11 @@ LAST_COLUMN = UNIT + MOST_COLUMNS
 PER_MILLE = 1e3  # MW per MW is shown as kW per MW
 
 MEANINGS = (
-    "“Extra” is always against the plant as it is, at the same heat to the network. Incremental efficiency "
-    "is extra net power over extra fuel. The ideal gain is that of sixteen stages with the same terminal "
-    "difference: what ever finer steps could still add. TTD, terminal temperature difference: saturation of "
-    "the steam less the water leaving. A dash: no such value, as the quality of steam that is not wet."
+    "“Extra” is always against the plant as it stands, at the same heat to the network. Incremental "
+    "efficiency is extra net power over extra fuel. The ideal gain is that of sixteen stages with the same "
+    "terminal difference: what ever finer steps could still add. TTD, terminal temperature difference: "
+    "saturation of the steam less the water leaving. A dash: no such value, as the quality of steam that is "
+    "not wet."
 )
 
 _STATE_HEADS = (
@@ -118,11 +121,7 @@ def _side_by_side(page: Page, row: int, study: Study) -> int:
 def balance_lines(balances: Sequence[Balance], baseline: int) -> Iterator[Line]:
     """The rows that compare the options."""
     base = balances[baseline]
-
-    def line(label: str, unit: str, kind: str, name: str, scale: float = 1.0) -> Line:
-        found = [getattr(balance, name) for balance in balances]
-        return Line(label, unit, kind, [None if value is None else value * scale for value in found])
-
+    line = partial(line_of, balances)
     yield line("Heat", "MW", "number3", "heat_MW")
     yield line("Gross power", "MW", "number3", "power_gross_MW")
     yield line("Net power", "MW", "number3", "power_net_MW")
@@ -256,10 +255,7 @@ def _stage_name(index: int, number: int) -> str:
 
 def stage_lines(stages: Sequence[StageBalance], surface_m2: Sequence[float]) -> Iterator[Line]:
     """Everything that is known of the stages. `surface_m2` : to be bought, also beside the existing one."""
-
-    def line(label: str, unit: str, kind: str, name: str) -> Line:
-        return Line(label, unit, kind, [getattr(stage, name) for stage in stages])
-
+    line = partial(line_of, stages)
     yield line("Shell pressure", "bar", "number3", "shell_bar")
     yield line("Saturation temperature", "°C", "number2", "saturation_C")
     yield line("Water in", "°C", "number2", "water_in_C")

@@ -18,7 +18,7 @@ ACCENT = "1D6A72"
 GREY = "595959"
 RULE = "A6A6A6"
 PALE = "EEF1F4"
-INPUT_FILL = "FFF6DC"
+INPUT_FILL = "E2ECF7"
 WHITE = "FFFFFF"
 BLACK = "000000"
 GOOD = "1E5B3A"
@@ -101,7 +101,7 @@ _NUMBERS: Mapping[str, Look] = {
 
 _TEXTS: Mapping[str, Look] = {
     "text": Look(across="left"),
-    "text_wrap": Look(across="left", upright="top", wrap=True),
+    "text_wrap": Look(across="left", wrap=True),
     "text_right": Look(across="right", shrink=True),
     "text_centre": Look(across="center"),
 }
@@ -114,13 +114,13 @@ _FIXED: Mapping[str, Look] = {
     "heading_left": Look(bold=True, colour=WHITE, fill=SLATE, across="left", wrap=True),
     "label": Look(across="left"),
     "label_indent": Look(across="left", indent=1),
-    "label_wrap": Look(across="left", upright="top", wrap=True),
+    "label_wrap": Look(across="left", wrap=True),
     "label_total": Look(bold=True, top="thin", border_colour=SLATE, across="left"),
     "unit": Look(colour=GREY, across="left"),
     "unit_total": Look(colour=GREY, top="thin", border_colour=SLATE, across="left"),
     "note": Look(points=9, colour=GREY, across="left"),
-    "note_wrap": Look(points=9, colour=GREY, across="left", upright="top", wrap=True),
-    "note_wrap_indent": Look(points=9, colour=GREY, across="left", upright="top", wrap=True, indent=1),
+    "note_wrap": Look(points=9, colour=GREY, across="left", wrap=True),
+    "note_wrap_indent": Look(points=9, colour=GREY, across="left", wrap=True, indent=1),
     "verdict": Look(points=14, bold=True, colour=ACCENT, across="left", wrap=True),
     "ok": Look(bold=True, colour=GOOD, fill=GOOD_FILL, across="center"),
     "fail": Look(bold=True, colour=WHITE, fill=BAD, across="center"),
@@ -143,6 +143,7 @@ def _variants(kind: str, look: Look) -> dict[str, Look]:
         f"{kind} as run total": replace(
             look, italic=True, bold=True, colour=GREY, top="thin", border_colour=SLATE
         ),
+        f"{kind} helper": replace(look, points=9, colour=GREY),
         f"{kind} total": replace(look, bold=True, top="thin", border_colour=SLATE),
         f"{kind} bold": replace(look, bold=True),
         f"{kind} key": replace(look, bold=True, points=14, colour=SLATE, bottom="thin"),
@@ -162,7 +163,7 @@ STYLES: Mapping[str, Look] = {
 }
 
 LEGEND: tuple[tuple[str, str, str], ...] = (
-    ("sample_input", "input", "may be changed: unlocked, tinted, dotted frame"),
+    ("sample_input", "input", "may be changed: unlocked, pale blue, dotted frame"),
     ("general", "live", "a formula: follows the inputs"),
     ("general as run", "as run", "in italics: value of the run, does not follow a changed input"),
     ("general total", "total", "sum of the rows above it"),

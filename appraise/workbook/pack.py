@@ -14,6 +14,7 @@ from datetime import datetime, timedelta
 from xml.sax.saxutils import escape, quoteattr
 from zipfile import ZIP_DEFLATED, ZipFile, ZipInfo
 
+from appraise import __version__
 from appraise.workbook.values import ERROR_CODES, SheetFault, Value, clean_text, stored_text
 
 ARCHIVE_TIME = (1980, 1, 1, 0, 0, 0)  # the earliest a zip archive knows
@@ -28,6 +29,7 @@ _FORMULA_CELL = re.compile(
 _FORMULA = re.compile(rb"<f[ >/]")
 _PICTURE_NAME = re.compile(rb'<((?:\w+:)?cNvPr)((?: (?!descr=)\w+="[^"]*")*)\s*(/?)>')
 _TIME = re.compile(rb"(<dcterms:(created|modified)[^>]*>)[^<]*(</dcterms:)")
+_MAKER = re.compile(rb"<Application>[^<]*</Application>\s*<AppVersion>[^<]*</AppVersion>")
 _LABEL_FORMAT = re.compile(rb'(<(?:\w+:)?numFmt formatCode="[^"]*")\s*(/>)')
 
 
@@ -58,8 +60,17 @@ def packed(
                 part = _LABEL_FORMAT.sub(rb'\1 sourceLinked="0"\2', part)
             elif name == "docProps/core.xml":
                 part = _TIME.sub(rb"\g<1>" + STAMP + rb"\g<3>", part)
+            elif name == "docProps/app.xml":
+                part = _MAKER.sub(maker(__version__), part)
             target.writestr(_entry(name), part)
     return result.getvalue()
+
+
+def maker(version: str) -> bytes:
+    """Which program wrote the file; the format takes a version as "1.0203" only."""
+    major, minor, patch = (int(number) for number in version.split(".")[:3])
+    told = f"<Application>appraise</Application><AppVersion>{major}.{minor:02d}{patch:02d}</AppVersion>"
+    return told.encode()
 
 
 def with_values(part: bytes, values: Mapping[str, Value], name: str) -> bytes:

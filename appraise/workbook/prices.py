@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from appraise.numerics import Array
-from appraise.workbook.calendar_rows import CASH_FLOW, ROWS
+from appraise.workbook.calendar_rows import CASH_FLOW, ROWS, put_calendar
 from appraise.workbook.cells import (
     LABEL,
     TOTAL,
@@ -96,17 +96,14 @@ class _Prices:
 
     def _years(self) -> None:
         there = sheet_prefix(CASH_FLOW)
-        self.page.row_of_formulas(
+        put_calendar(
+            self.page,
             YEAR_ROW,
             "Calendar year",
-            "unit",
             lambda c: f"={there}{c}{ROWS.calendar_year}",
             self.time.calendar,
-            "year heading",
-            label_style="heading_left",
-            unit_style="heading",
+            "mean of operation",
         )
-        self.page.put(YEAR_ROW, TOTAL, "mean of operation", "heading")
         self.page.height(YEAR_ROW, 30)
         self.page.row_of_formulas(
             OPERATING_YEAR_ROW,

@@ -80,11 +80,15 @@ class Values:
 
     def _tie_in(self) -> None:
         """What the baseline would have earned in the dates of the tie-in, at prices of the first year."""
-        page, currency = self.page, self.case.study.currency
-        title = (
-            "Tie-in: margin of the baseline lost, at prices of the first year of operation, price-year money"
+        page, currency, period = self.page, self.case.study.currency, self.case.capex.tie_in
+        days = "no days given" if period is None else f"{period.from_} to {period.to}, both included"
+        page.put(
+            self.top,
+            LABEL,
+            f"Tie-in, {days}: lost by the baseline while it stands (+ is a loss); every other option pays "
+            "it. Prices of the first year of operation, money of the price year",
+            "section",
         )
-        page.put(self.top, LABEL, title, "section")
         for col in range(UNIT, TOTAL + len(PRICED_LINES) + 1):
             page.put(self.top, col, None, "section")
         page.headings(self.top + 1, ["Scenario", "unit", *(line[1] for line in PRICED_LINES), "margin lost"])
@@ -154,11 +158,11 @@ class Values:
             "variable cost",
             "tie-in",
             "sum after tax",
-            "what no price touches",
+            "capital, grant, fixed cost, residual, after tax",
             "net present value",
         ]
         page.headings(row + 1, ["Scenario: option", "unit", *heads])
-        page.height(row + 1, 42)
+        page.height(row + 1, 70)
         for scenario in range(len(self.scenarios)):
             for option in self.options:
                 self._value_row(scenario, option)

@@ -9,14 +9,24 @@ import numpy as np
 from appraise.numerics import Array
 
 
+def grouped(value: float, decimals: int = 0) -> str:
+    """A number with groups of three and a true minus."""
+    return f"{value:,.{decimals}f}".replace("-", "−")
+
+
+def grouped_formula(cell: str, decimals: int = 0) -> str:
+    """Expression of the same words."""
+    return f'SUBSTITUTE(FIXED({cell},{decimals}),"-","−")'
+
+
 def thousands(value: float, currency: str) -> str:
-    """Money in thousands, as FIXED writes it."""
-    return f"{value / 1000.0:,.0f} thousand {currency}"
+    """Money in thousands."""
+    return f"{grouped(value / 1000.0)} thousand {currency}"
 
 
 def thousands_formula(cell: str, currency: str) -> str:
     """Expression of the same words."""
-    return f'FIXED({cell}/1000,0)&" thousand {currency}"'
+    return f'{grouped_formula(f"{cell}/1000")}&" thousand {currency}"'
 
 
 def best_words(best: Sequence[int], options: Sequence[str], baseline: int) -> str:

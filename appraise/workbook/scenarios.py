@@ -105,7 +105,7 @@ class _Scenarios:
         for col in range(UNIT, self.last + 1):
             self.page.put(row, col, None, "section")
 
-    def _headings(self, row: int, label: str, *more: str) -> None:
+    def _headings(self, row: int, label: str, *more: str | None) -> None:
         self.page.headings(row, [label, "unit", *self.names, *more])
         self.page.height(row, 42)
 
@@ -125,9 +125,11 @@ class _Scenarios:
 
     def _matrix(self) -> None:
         page, comparison, currency = self.page, self.study.comparison, self.case.study.currency
-        self._section(MATRIX_TOP, "Net present value against the baseline")
-        self._headings(MATRIX_TOP + 1, "Scenario", "best: number from the left", "best option")
-        page.merge(MATRIX_TOP + 1, self.last + 2, MATRIX_TOP + 1, self.last + 3)
+        self._section(
+            MATRIX_TOP, f"Net present value against “{self.names[self.base]}”, the plant as it stands"
+        )
+        self._headings(MATRIX_TOP + 1, "Scenario", "best option", None, "helper: its column")
+        page.merge(MATRIX_TOP + 1, self.last + 1, MATRIX_TOP + 1, self.last + 2)
         names = area(MATRIX_TOP + 1, TOTAL, MATRIX_TOP + 1, self.last, absolute=True)
         for number, scenario in enumerate(self.scenarios):
             row = self.matrix + number
@@ -143,12 +145,12 @@ class _Scenarios:
                     )
             cells = self._row(row)
             best = comparison.best[number]
-            place = ref(row, self.last + 1)
+            place = ref(row, self.last + 3)
             text = f"=INDEX({names},1,{place})"
-            page.formula(row, self.last + 1, f"=MATCH(MAX({cells}),{cells},0)", best + 1, "integer")
             page.formula(
-                row, self.last + 2, text, self.names[best], "label_indent", name_of("best", scenario)
+                row, self.last + 1, text, self.names[best], "label_indent", name_of("best", scenario)
             )
+            page.formula(row, self.last + 3, f"=MATCH(MAX({cells}),{cells},0)", best + 1, "integer helper")
         self._summary(
             self.worst,
             "Worst of the scenarios",
@@ -167,14 +169,16 @@ class _Scenarios:
     def _counts(self) -> None:
         """In how many scenarios each option is best."""
         page, best = self.page, self.study.comparison.best
-        page.put(self.counts, LABEL, "Best in so many scenarios", "label")
-        page.put(self.counts, UNIT, "–", "unit")
-        found = area(self.matrix, self.last + 1, self.worst - 1, self.last + 1, absolute=True)
-        for index in range(len(self.options)):
+        page.put(self.counts, LABEL, "Scenarios in which it is best", "label")
+        page.put(self.counts, UNIT, f"of {len(self.scenarios)}", "unit")
+        found = area(self.matrix, self.last + 3, self.worst - 1, self.last + 3, absolute=True)
+        for index, option in enumerate(self.options):
             col = TOTAL + index
             here = f"{ref(self.counts, TOTAL, 'column')}:{ref(self.counts, col)}"
             formula = f"=COUNTIF({found},COLUMNS({here}))"
-            page.formula(self.counts, col, formula, sum(1 for one in best if one == index), "integer")
+            page.formula(
+                self.counts, col, formula, best.count(index), "integer", name_of("times_best", option.key)
+            )
 
     def _regret(self) -> None:
         page, comparison = self.page, self.study.comparison
@@ -209,7 +213,7 @@ class _Scenarios:
     def _as_run(self) -> None:
         """Python's own matrix."""
         page, comparison = self.page, self.study.comparison
-        self._section(self.run_top, "As run: net present value against the baseline")
+        self._section(self.run_top, f"As run: net present value against “{self.names[self.base]}”")
         self._headings(self.run_top + 1, "Scenario")
         for number in range(len(self.scenarios)):
             row = self.run_top + 2 + number

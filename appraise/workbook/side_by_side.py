@@ -40,6 +40,15 @@ def residual(value: float) -> float:
     return float(f"{value:.1e}")
 
 
+def line_of(
+    objects: Sequence[object], label: str, unit: str, kind: str, name: str, scale: float = 1.0
+) -> Line:
+    """One attribute of every object, `scale` times what it is."""
+    found = [getattr(one, name) for one in objects]
+    scaled = found if scale == 1.0 else [None if value is None else value * scale for value in found]
+    return Line(label, unit, kind, scaled)
+
+
 def group(label: str) -> Line:
     """A heading over the lines below it."""
     return Line(label, "", "text", ())

@@ -9,16 +9,17 @@ from typing import TYPE_CHECKING
 from appraise.case.money import Driver
 from appraise.sensitivity import Tornado
 from appraise.workbook.cells import LABEL, Page, Sheet, area, ref
-from appraise.workbook.charts import Axis, Series, tornado_chart
+from appraise.workbook.charts import HATCHED_SLOT, Axis, Series, tornado_chart
 from appraise.workbook.looks import REDUCED_CHART_POINTS
 from appraise.workbook.naming import name_of
-from appraise.workbook.tornado_bars import Bars
+from appraise.workbook.tornado_bars import NO_EFFECT, Bars
 
 if TYPE_CHECKING:
     from appraise.study import Study
 
 TITLE = "Tornado"
 TOP = 6
+FOULED = "plant.condenser.terminal_difference_K"
 ROW_CM = 15.0 / 72.0 * 2.54  # a row of 15 points
 PAGE_CM = 39.0  # height of what surely fits on a printed page, at the scale that the width asks for
 (DRIVER, HOW, UNIT, NOW, LOW, HIGH, NPV_LOW, NPV_HIGH, DOWN, UP, SWING, PLACE, REASON) = range(1, 14)
@@ -26,7 +27,7 @@ LAST_PRINTED = REASON
 WIDTHS = (36.0, 8.0, 9.5, 10.0, 8.5, 8.5, 11.5, 11.5, 11.5, 11.5, 11.5, 8.0, 14.0)
 HEADINGS = (
     "Driver",
-    "bar",
+    "live or as run",
     "unit",
     "in the run",
     "low",
@@ -36,15 +37,15 @@ HEADINGS = (
     "change at low",
     "change at high",
     "swing",
-    "place in the list",
-    "why no value",
+    "row in the case",
+    "remark",
 )
 NOTE = (
     "Each driver alone goes to its low and its high end, the rest stays as it is. Live bars follow the "
     "inputs and the chosen scenario, with the hours as run. Bars as run were solved in the reference "
     "scenario; after a change of inputs they keep their difference to the net present value of the run. A "
-    "share, as −25 %, multiplies what is in the run; any other end replaces it. NPV: net present value. How "
-    "the bars are made stands below and is not printed."
+    "share, as −25 %, multiplies what is in the run; any other end replaces it. Drivers of no effect keep "
+    "their line. NPV: net present value. How the bars are made stands below and is not printed."
 )
 
 
@@ -54,6 +55,7 @@ def tornado_sheet(study: Study) -> Sheet:
     page.head("Tornado: one driver at a time")
     page.width([*WIDTHS, 12, 12, 38])
     page.paragraph(4, LABEL, LAST_PRINTED, NOTE, "note_wrap")
+    page.paragraph(5, LABEL, LAST_PRINTED, direction_words(study), "note_wrap")
     drivers = [driver for driver in study.case.drivers if driver.low is not None and driver.high is not None]
     if not drivers or not study.tornado:
         page.put(TOP, LABEL, "The case names no driver with a low and a high end, or no option to vary.")
@@ -70,6 +72,26 @@ def tornado_sheet(study: Study) -> Sheet:
     page.freeze(4, 2)
     page.printed(landscape=False, area=area(1, 1, breaks[-1], LAST_PRINTED), breaks_after=breaks[:-1])
     return page.finish()
+
+
+def direction_words(study: Study) -> str:
+    """Why a worse existing condenser can raise the gain, "" where none of the bars says so."""
+    raised = [
+        (bar.label, option.name)
+        for tornado in study.tornado
+        for option in study.case.options
+        if option.key == tornado.option
+        for bar in tornado.bars
+        if bar.path == FOULED and bar.npv_low is not None and bar.npv_high is not None
+        if bar.npv_high > bar.npv_low
+    ]
+    if not raised:
+        return ""
+    names = ", ".join(f"“{name}”" for _, name in raised)
+    return (
+        f"“{raised[0][0]}” seems to work the wrong way: a more fouled existing condenser raises the value of "
+        f"{names}, because the plant it is compared with is worse."
+    )
 
 
 def _chart_cm(drivers: int) -> float:
@@ -128,8 +150,8 @@ class _Sorted:
         pick(HOW, "how", bars.how(index), "text_centre")
         pick(UNIT, "unit", bars.unit(index), "unit", '&""')
         pick(NOW, "now", bars.now(index), "text_right")
-        pick(LOW, "low_text", bars.text(driver.low), "text_right")
-        pick(HIGH, "high_text", bars.text(driver.high), "text_right")
+        pick(LOW, "low_text", bars.text(index, driver.low), "text_right")
+        pick(HIGH, "high_text", bars.text(index, driver.high), "text_right")
         ends = (("npv_low", NPV_LOW, DOWN, bar.npv_low), ("npv_high", NPV_HIGH, UP, bar.npv_high))
         for source, col, change, value in ends:
             pick(col, source, "no value" if value is None else value, "money")
@@ -138,7 +160,9 @@ class _Sorted:
             page.formula(row, change, f'=IF(ISNUMBER({cell}),{cell}-{self.npv},"")', moved, "money")
         pick(SWING, "swing", bars.swing(index), "money bold")
         # An empty cell looked up would read 0.
-        pick(REASON, "reason", bars.reason(index), "note", '&""')
+        reason = f'INDEX({bars.column("reason")},{place})&""'
+        formula = f'=IF({reason}<>"",{reason},IF({ref(row, SWING)}=0,"{NO_EFFECT}",""))'
+        page.formula(row, REASON, formula, bars.remark(index), "note")
 
     def _chart(self) -> None:
         rows = self.first, self.last
@@ -146,12 +170,13 @@ class _Sorted:
         widest = [self.bars.drivers[index].label for index in self.bars.order[:3]]
         chart = tornado_chart(
             f"{self.name}: change of net present value",
-            Series("driver at its low end", TITLE, low),
-            Series("driver at its high end", TITLE, high),
+            Series("driver at its low end", TITLE, low, slot=HATCHED_SLOT),
+            Series("driver at its high end", TITLE, high, slot=0),
             (TITLE, area(rows[0], DRIVER, rows[1], DRIVER)),
             y=Axis(f"change, thousand {self.currency}", "#,##0,"),
-            alt=f"Change of the net present value of {self.name} with one driver at its low or high end, "
-            f"{self.currency}, as run around {self.tornado.base_npv:,.0f}. Widest: {', '.join(widest)}.",
+            alt=f"Change of the net present value of {self.name} with one driver at its low (hatched) or its "
+            f"high end, {self.currency}, as run around {self.tornado.base_npv:,.0f}. "
+            f"Widest: {', '.join(widest)}.",
             anchor=ref(self.last + 2, LABEL),
             size_cm=(CHART_WIDTH_CM, _chart_cm(len(self.bars.drivers))),
             title_cell=(TITLE, ref(self.top, LABEL)),

@@ -11,16 +11,17 @@ from appraise.sensitivity import Bar, Change, Tornado
 from appraise.workbook.cells import Page, area, ref
 from appraise.workbook.input_rows import input_rows
 from appraise.workbook.naming import name_of
-from appraise.workbook.tornado_drivers import AS_RUN, LiveBar, live_bar, shown, value_now
+from appraise.workbook.tornado_drivers import AS_RUN, LiveBar, driver_unit, live_bar, shown_in, value_now
 
 if TYPE_CHECKING:
     from appraise.study import Study
 
 NO_VALUE = "no value"
+NO_EFFECT = "no effect"
 
 COLUMNS = (
     ("driver", "Driver, in the order of the case"),
-    ("how", "bar"),
+    ("how", "live or as run"),
     ("now", "in the run"),
     ("low_text", "low"),
     ("high_text", "high"),
@@ -34,7 +35,7 @@ COLUMNS = (
     ("npv_high", "NPV at high"),
     ("swing", "swing"),
     ("path", "path"),
-    ("reason", "why no value"),
+    ("reason", "remark"),
     ("unit", "unit"),
 )
 AT = {name: number for number, (name, _) in enumerate(COLUMNS, 1)}
@@ -64,6 +65,8 @@ class Bars:
     def _live(self, driver: Driver, bar: Bar) -> LiveBar:
         """How a bar follows; one without width tells nothing of its slope."""
         live = live_bar(self.study, self.option, driver, bar)
+        if live.way == "run":
+            return live
         ends = {self._units(driver, live, change) for change in (driver.low, driver.high)}
         return live if len(ends) == 2 else AS_RUN
 
@@ -79,25 +82,23 @@ class Bars:
 
     def now(self, index: int) -> str:
         """The driver's value in the run."""
-        return value_now(self.case, self.drivers[index])
+        return value_now(self.case, self.drivers[index], self.unit(index))
 
     def unit(self, index: int) -> str:
-        """Unit of the driver, as the Inputs sheet has it; shares are shown as fractions here."""
-        path = self.drivers[index].path
-        if path.startswith("scenario."):
-            path = f"scenarios.{self.case.study.reference_scenario}.{path.removeprefix('scenario.')}"
-        found = (self.units.get(path + ending) for ending in ("", ".start", ".value[0]"))
-        unit = next((unit for unit in found if unit is not None), "")
-        return "–" if unit == "%" else unit
+        """Unit of the driver."""
+        return driver_unit(self.drivers[index].path, self.case.study.reference_scenario, self.units)
 
-    @staticmethod
-    def text(end: Change | None) -> str:
+    def text(self, index: int, end: Change | None) -> str:
         """An end as a reader would say it."""
-        return shown(end)
+        return shown_in(end, self.unit(index))
 
     def swing(self, index: int) -> float:
         """Width of a bar, base included, to the cent: rounding must not decide the order."""
         return round(self.bars[index].swing, 2)
+
+    def remark(self, index: int) -> str:
+        """What the sorted table says of a bar: why an end has no value, or that the driver has no effect."""
+        return self.reason(index) or ("" if self.swing(index) else NO_EFFECT)
 
     def reason(self, index: int) -> str:
         """Why an end has no value, "" where both have."""
@@ -127,8 +128,8 @@ class Bars:
         page.put(row, AT["driver"], driver.label, "label")
         page.put(row, AT["how"], self.how(index), "text_centre")
         page.put(row, AT["now"], self.now(index), "text_right as run")
-        page.put(row, AT["low_text"], self.text(driver.low), "text_right as run")
-        page.put(row, AT["high_text"], self.text(driver.high), "text_right as run")
+        page.put(row, AT["low_text"], self.text(index, driver.low), "text_right as run")
+        page.put(row, AT["high_text"], self.text(index, driver.high), "text_right as run")
         page.put(row, AT["run_low"], bar.npv_low, "money as run")
         page.put(row, AT["run_high"], bar.npv_high, "money as run")
         page.put(row, AT["reason"], self.reason(index), "note")

@@ -7,6 +7,7 @@ hours or the length of the study was solved in the run and keeps its difference 
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Literal
 
@@ -183,6 +184,29 @@ def shown(value: object) -> str:
     return "several values"
 
 
-def value_now(case: Case, driver: Driver) -> str:
+def shown_in(value: object, unit: str) -> str:
+    """The same in a unit: a fraction in per cent, and "−25 %" as "−25 % of it", which is no other value."""
+    if not unit.startswith("%"):
+        return shown(value)
+    if isinstance(value, int | float) and not isinstance(value, bool):
+        return f"{shown(100.0 * value)} %"
+    text = shown(value)
+    return f"{text} of it" if text.endswith("%") else text
+
+
+def value_now(case: Case, driver: Driver, unit: str = "") -> str:
     """What the driver's path has in the run."""
-    return shown(value_in_force(case, driver.path))
+    return shown_in(value_in_force(case, driver.path), unit)
+
+
+def driver_unit(path: str, scenario: str, units: Mapping[str, str]) -> str:
+    """Unit of a driver, as the Inputs sheet has it; a plain factor is "times".
+
+    scenario : stands for `scenario.` at the path's beginning. units : by path of the inputs
+    """
+    if path.startswith("scenario."):
+        path = f"scenarios.{scenario}.{path.removeprefix('scenario.')}"
+    found = (units.get(path + ending) for ending in ("", ".start", ".value[0]"))
+    unit = next((unit for unit in found if unit is not None), "")
+    factor = path.endswith(("multiplier", "factor"))
+    return "times" if unit == "–" and factor else unit

@@ -11,6 +11,7 @@ FIRST_DATE = datetime(1900, 3, 1)  # before it the format counts a day that neve
 ERROR_CODES = ("#N/A", "#NUM!", "#DIV/0!", "#VALUE!", "#REF!", "#NAME?", "#NULL!")
 LONGEST_TEXT = 32_767
 LONGEST_CONSTANT = 255
+_PIECE = 120  # of a long text: characters are counted in UTF-16 units, of which one may have two
 CUT_MARK = " … [cut]"
 
 # Control characters, lone surrogates, what XML cannot hold, and marks that turn the direction of reading.
@@ -55,6 +56,12 @@ def quoted(text: str) -> str:
         raise SheetFault(f"a text constant in a formula has {len(text)} characters; 255 are allowed")
     doubled = clean_text(text).replace('"', '""')
     return '"' + _ESCAPE_ALIKE.sub('_"&"', doubled) + '"'
+
+
+def quoted_text(text: str) -> str:
+    """A text of any length as an expression of constants joined in a formula."""
+    pieces = [text[start : start + _PIECE] for start in range(0, len(text), _PIECE)]
+    return "&".join(quoted(piece) for piece in pieces) or '""'
 
 
 def clean_text(text: str) -> str:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Sequence
+from functools import partial
 
 from appraise.emissions import HIGH_EFFICIENCY_SAVING, carbon_change, plant_saving
 from appraise.study import Study
@@ -10,7 +11,7 @@ from appraise.trade import YearFigures
 from appraise.workbook.cells import LABEL, TOTAL, UNIT, Page, Sheet, area, column
 from appraise.workbook.charts import Axis, Chart, Series, bar_chart
 from appraise.workbook.naming import Timeline
-from appraise.workbook.side_by_side import Line, group, put_section, put_table
+from appraise.workbook.side_by_side import Line, group, line_of, put_section, put_table
 from appraise.workbook.year_energies import (
     CHART_CM,
     CHART_ROWS,
@@ -82,11 +83,7 @@ def _figures(page: Page, row: int, study: Study, last_col: int) -> int:
 
 def figure_lines(study: Study, figures: Sequence[YearFigures]) -> Iterator[Line]:
     """All figures of the year, in groups."""
-
-    def line(label: str, unit: str, kind: str, name: str, scale: float = 1.0) -> Line:
-        found = [getattr(figure, name) for figure in figures]
-        return Line(label, unit, kind, [None if value is None else value * scale for value in found])
-
+    line = partial(line_of, figures)
     yield group("Energy")
     yield line("Heat from the plant", "MWh", "integer", "heat_MWh")
     if any(figure.flue_gas_heat_MWh for figure in figures):
