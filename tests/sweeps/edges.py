@@ -126,22 +126,28 @@ def _sized(made: Design, train: Train) -> OptionDesign:
     return size_option(made.plant, train, made.reference, made.conditions, made.existing_conductance_kW_K)
 
 
-def _gains_MW(made: Design, trains: Iterable[Train], on_bleed: bool = False) -> float | None:
-    """Gross power at the design point of the second of two trains less that of the first.
+@dataclass(frozen=True, slots=True)
+class _Step:
+    """From one train to another at the design point: extra gross power, and what heats each deaerator."""
 
-    None where one cannot be built, or where one has its deaerator on the bleed and the other on live steam:
-    that step costs more than any of the laws gives. None too where `on_bleed` asks for the bleed and one of the
-    deaerators is on live steam, or takes no steam because its water is hot enough.
-    """
+    gain_MW: float
+    heated_by: tuple[str, str]
+
+
+def _step(made: Design, trains: Iterable[Train]) -> _Step | None:
+    """None where one of the two cannot be built."""
     try:
         before, after = (_sized(made, train).solution for train in trains)
     except CaseError:
         return None
-    if before.on_live_steam[0] != after.on_live_steam[0]:
-        return None
-    if on_bleed and any(at.on_live_steam[0] or at.feed.bleed_kg_s[0] <= _TRACE_KG_S for at in (before, after)):
-        return None
-    return float(after.energy.power_gross_MW[0] - before.energy.power_gross_MW[0])
+    gain = float(after.energy.power_gross_MW[0] - before.energy.power_gross_MW[0])
+    return _Step(gain, (_heated_by(before), _heated_by(after)))
+
+
+def _heated_by(at: Solution) -> str:
+    if at.on_live_steam[0]:
+        return "live steam"
+    return "bleed" if at.feed.bleed_kg_s[0] > _TRACE_KG_S else "nothing"
 
 
 def _identity_missed(made: Design, base: Solution, option: Solution) -> float:
@@ -174,35 +180,40 @@ def _stage_laws(case: Case, made: Design, option: OptionDesign) -> Iterator[Law]
     """
     row, heat_MW = case.options[1], float(made.conditions.heat_MW[0])
     if option.train.tail.inlet_loss_share == 0.0:
-        pair = (ideal_train(case, row, n) for n in (row.stages, row.stages + 1))
-        gain = _gains_MW(made, pair, on_bleed=True)
-        if gain is not None:
-            yield Law("more equal stages", -gain / heat_MW - _SAME)
+        step = _step(made, (ideal_train(case, row, n) for n in (row.stages, row.stages + 1)))
+        if step is not None and step.heated_by == ("bleed", "bleed"):
+            yield Law("more equal stages", -step.gain_MW / heat_MW - _SAME)
     if row.stages > 1 and row.drain_route == "cascade":
         both = (row.model_copy(update={"drain": drain}) for drain in ("saturated", "subcooled"))
-        gain = _gains_MW(made, (train_of(case, one) for one in both))
-        if gain is not None:
-            yield Law("subcooling", -gain / heat_MW - _SAME)
+        step = _step(made, (train_of(case, one) for one in both))
+        # From bleed to live steam costs more than subcooling gives.
+        if step is not None and len({by == "live steam" for by in step.heated_by}) == 1:
+            yield Law("subcooling", -step.gain_MW / heat_MW - _SAME)
 
 
 def _vanishing(plant: EdgePlant) -> Iterator[Law]:
     """The gain of equal stages falls to a tenth where the lift and all differences do, once they are small.
 
-    Small enough that nothing changes its regime between the two (plant 9410: at a tenth of its lift it does).
-    Not with a loss at the tail's inlets: a share of the pressure stays when the pressures come together.
+    Where what heats a deaerator changes on the way, the gain has another slope from there on (plant 7550):
+    then it must only be smaller. Not with a loss at the tail's inlets: a share of the pressure stays when the
+    pressures come together.
     """
     if plant.stages == 1 or plant.data["tail"]["inlet_loss_share"] > 0.0:
         return
-    gains = []
+    steps = []
     for scale in (0.01, 0.001):
         case = plant.shrunk(scale).case()
-        made = _baseline_design(case)
-        gain = _gains_MW(made, (ideal_train(case, case.options[1], n) for n in (1, plant.stages)))
-        if gain is None:
-            return
-        gains.append(gain)
-    ratio = gains[0] / gains[1]
-    yield Law("gain vanishes with the lift", abs(np.log10(abs(ratio)) - 1.0) - _NEARLY if ratio > 0.0 else 1.0)
+        trains = (ideal_train(case, case.options[1], n) for n in (1, plant.stages))
+        steps.append(_step(_baseline_design(case), trains))
+    large, small = steps
+    if large is None or small is None:
+        return
+    if large.heated_by != small.heated_by:
+        yield Law("gain is smaller with less lift", abs(small.gain_MW) - abs(large.gain_MW))
+        return
+    ratio = large.gain_MW / small.gain_MW
+    missed = abs(np.log10(ratio) - 1.0) - _NEARLY if ratio > 0.0 else 1.0
+    yield Law("gain vanishes with the lift", missed)
 
 
 # --- what is told -----------------------------------------------------------------------------------------
