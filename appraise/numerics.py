@@ -5,7 +5,7 @@ Nothing here knows about steam or money. Arrays in, arrays out, and nothing fail
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -192,6 +192,15 @@ def fixed_point(
         inverse = _broyden_update(inverse, move, updated - residual)
         residual = updated
     return FixedPoint(x, at_end, converged)
+
+
+def joined(parts: Sequence[FixedPoint]) -> FixedPoint:
+    """One iteration of all points from those of their blocks."""
+    return FixedPoint(
+        np.concatenate([part.x for part in parts], axis=-1),
+        np.concatenate([part.inverse for part in parts], axis=-1),
+        np.concatenate([part.converged for part in parts]),
+    )
 
 
 def _broyden_update(inverse: Array, move: Array, change: Array) -> Array:

@@ -9,6 +9,7 @@ import pytest
 from appraise.case.load import LoadedCase, case_from, load_case
 from appraise.case.paths import changed
 from appraise.chain import Physics, solve_physics
+from appraise.cycle import solve
 from appraise.numerics import fixed_point
 
 INPUTS = Path(__file__).parents[1] / "inputs"
@@ -61,6 +62,15 @@ def test_a_changed_plant_solved_from_another(known, path: str, change: str | flo
                     assert np.array_equal(found, expected), field.name
                 elif isinstance(expected, np.ndarray):
                     np.testing.assert_allclose(found, expected, rtol=1e-9, atol=1e-9, err_msg=field.name)
+
+
+def test_blocks_of_hours_do_not_touch_each_other(known, monkeypatch) -> None:
+    loaded, base = known
+    monkeypatch.setattr(solve, "_BLOCK", 1000)
+    found = solve_physics(loaded.case, loaded.hours)
+    for one, other in zip(base.years.solved[0], found.years.solved[0], strict=True):
+        assert np.array_equal(one.on, other.on)
+        np.testing.assert_allclose(other.power_net_MW, one.power_net_MW, rtol=1e-10, atol=1e-10)
 
 
 def test_a_rest_that_leads_astray_is_left_for_the_plain_start() -> None:
