@@ -25,7 +25,7 @@ from appraise.workers import each
 
 _BLOCK = 2000  # draws whose money is held at once
 # The second only where the first is not accurate enough.
-_FINENESS = (Fineness(2, 1.2, bent=False), Fineness(1, 2.4, bent=True))
+_FINENESS = (Fineness(2, 1.4, bent=False), Fineness(1, 2.4, bent=True))
 METHOD_LIMIT = 0.01
 FEWEST_CHECKED = 12
 
