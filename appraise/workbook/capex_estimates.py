@@ -15,7 +15,7 @@ def put_estimates(page: Page, row: int, study: Study) -> int:
     items = {item.key: item.name for item in study.case.capex.items}
     unit = study.case.study.currency
     page.headings(row, ("item, option", "unit", "chosen", "published", "ratio"), "heading_left")
-    page.put(row, YEAR_ZERO + 2, "by", "heading_left")
+    page.put(row, YEAR_ZERO + 2, "by (seen: its source was read; from memory: recalled)", "heading_left")
     page.merge(row, YEAR_ZERO + 2, row, LAST)
     for one in study.estimates:
         row += 1

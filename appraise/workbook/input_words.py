@@ -203,7 +203,7 @@ WORDS: Mapping[str, Mapping[str, str]] = MappingProxyType(
         "CapexItem": {
             "key": "key",
             "name": "name",
-            "amount": "quotation",
+            "amount": "amount given",
             "correlation": "correlation",
             "share_of": "share of item",
             "share": "share of those items",
