@@ -132,28 +132,14 @@ def run_study(
     figures = tuple(tuple(_figures(case, physics, run, i) for i in range(len(case.options))) for run in runs)
     told = tuple(tuple(measures(flow) for flow in run.flows) for run in runs)
     reference = list(case.scenarios).index(case.study.reference_scenario)
-    bars = tornado(
-        case,
-        loaded.data,
-        hours,
-        physics,
-        comparison.npv[reference],
-        lambda fraction, label: progress(0.2 + 0.3 * fraction, label),
-    )
+    base_npv, data = comparison.npv[reference], loaded.data
+    bars = tornado(case, data, hours, physics, base_npv, _part(progress, 0.2, 0.5))
     progress(0.5, "what moves the gain")
-    moves = gain_moves(case, loaded.data, hours, physics)
+    moves = gain_moves(case, data, hours, physics)
     number = case.draws.number if draws is None else draws
-    drawn = risk(
-        case,
-        loaded.data,
-        hours,
-        physics,
-        number,
-        verify,
-        lambda fraction, label: progress(0.55 + 0.25 * fraction, label),
-    )
+    drawn = risk(case, data, hours, physics, number, verify, _part(progress, 0.55, 0.8))
     progress(0.8, "design choice")
-    choice = chosen_design(case, hours, comparison.npv[reference])
+    choice = chosen_design(case, hours, base_npv)
     progress(0.95, "checks")
     return Study(
         loaded=loaded,
@@ -177,6 +163,11 @@ def run_study(
         design_choice=choice,
         checks=checks(case, hours, physics, bought, runs, None if drawn is None else drawn.method_error),
     )
+
+
+def _part(progress: Progress, start: float, end: float) -> Progress:
+    """What a part of the work says of itself, as a part of the whole."""
+    return lambda fraction, label: progress(start + (end - start) * fraction, label)
 
 
 def _date_of(case: Case, today: date | None) -> date:

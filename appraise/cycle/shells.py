@@ -80,6 +80,16 @@ def _drain(stage: Stage, shell: Saturation, water_in_C: Array) -> tuple[Array, A
     return cooled, enthalpy
 
 
+def _zone_C(plant: PlantData, stage: Stage, inlet_C: Array, water_kJ_kg: Array, subcooling: Array) -> Array:
+    """Water after the drain-cooling zone, at most as hot as the stage makes it.
+
+    water_kJ_kg : before and after the stage [2, point]. subcooling : heat of the drain per kg of water.
+    """
+    if stage.drain_approach_K is None:
+        return inlet_C
+    return plant.network.temperature(np.clip(water_kJ_kg[0] + subcooling, *water_kJ_kg))
+
+
 @dataclass(frozen=True, slots=True, eq=False)
 class Throttle:
     """How the steam enters the tail sections [stage - 1, point], cold to hot.
@@ -152,16 +162,9 @@ def solve_shells(
         drain_C, drain_h = _drain(stage, shell, water_C[i])
         cascading = np.zeros(points) if train.pumped else inflow
         steam = condensed_steam(network_kg_s * rise[i], cascading, above_drain - drain_h, h, drain_h)
-        subcooling = (steam + cascading) * (shell.hf - drain_h)
-        cooled_zone = (
-            water_C[i]
-            if stage.drain_approach_K is None
-            else plant.network.temperature(
-                np.clip(water_h[i] + subcooling / network_kg_s, *water_h[i : i + 2])
-            )
-        )
+        subcooling = (steam + cascading) * (shell.hf - drain_h) / network_kg_s
         found = {
-            "zone_C": cooled_zone,
+            "zone_C": _zone_C(plant, stage, water_C[i], water_h[i : i + 2], subcooling),
             "saturation_C": t_sat,
             "shell_bar": shell.pressure_bar,
             "flange_bar": flange.pressure_bar,
