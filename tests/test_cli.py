@@ -5,13 +5,14 @@ import json
 import re
 import sys
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from pathlib import Path
 from types import ModuleType
 from typing import Any
 
 import openpyxl
 import pytest
+from calls import Answer, Call, contents
 from cases import csv_text, minimal_case, synthetic_hours, write_case
 
 from appraise import cli, files, output, results, study
@@ -26,42 +27,6 @@ from appraise.workbook.book import workbook_bytes
 
 Read = pytest.CaptureFixture[str]
 UNMEASURED = "  plant.measured: no steady test and no year.metered; the baseline was compared with no meter\n"
-
-
-@dataclass(frozen=True)
-class Answer:
-    """What one call came to."""
-
-    status: int
-    out: str
-    err: str
-
-
-@pytest.fixture
-def call(capsys: Read, monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> Callable[..., Answer]:
-    """Calls the program in a folder of its own."""
-    monkeypatch.chdir(tmp_path)
-    monkeypatch.delenv("APPRAISE_DEBUG", raising=False)
-
-    def called(*arguments: str) -> Answer:
-        capsys.readouterr()
-        status = cli.main(arguments)
-        told = capsys.readouterr()
-        assert "Traceback" not in told.out + told.err
-        return Answer(status, told.out, told.err)
-
-    return called
-
-
-@pytest.fixture
-def case(tmp_path: Path) -> Path:
-    """The small case in the folder of the calls."""
-    return write_case(tmp_path, minimal_case())
-
-
-def contents(folder: Path) -> dict[str, bytes]:
-    """Every file below a folder with its content."""
-    return {str(path.relative_to(folder)): path.read_bytes() for path in folder.rglob("*") if path.is_file()}
 
 
 def usage(command: str, error: str) -> str:
@@ -81,7 +46,7 @@ def fails_with(error: Exception) -> Callable[..., Any]:
 # --- new ---------------------------------------------------------------------------------------------------
 
 
-def test_new_writes_the_starter_and_says_what_comes_next(call: Callable[..., Answer], tmp_path: Path) -> None:
+def test_new_writes_the_starter_and_says_what_comes_next(call: Call, tmp_path: Path) -> None:
     answer = call("new", "my plant")
     assert (answer.status, answer.err) == (0, "")
     assert answer.out == (
@@ -93,7 +58,7 @@ def test_new_writes_the_starter_and_says_what_comes_next(call: Callable[..., Ans
     assert call("check", "my plant/marrowby.toml").status == 0
 
 
-def test_new_overwrites_nothing(call: Callable[..., Answer], tmp_path: Path) -> None:
+def test_new_overwrites_nothing(call: Call, tmp_path: Path) -> None:
     (tmp_path / "town").mkdir()
     (tmp_path / "town" / "marrowby-year.csv").write_text("mine")
     answer = call("new", "town")
@@ -101,7 +66,7 @@ def test_new_overwrites_nothing(call: Callable[..., Answer], tmp_path: Path) -> 
     assert contents(tmp_path) == {"town/marrowby-year.csv": b"mine"}
 
 
-def test_new_into_a_file_is_refused(call: Callable[..., Answer], tmp_path: Path) -> None:
+def test_new_into_a_file_is_refused(call: Call, tmp_path: Path) -> None:
     (tmp_path / "town").write_text("a file")
     answer = call("new", "town")
     where = tmp_path / "town"
@@ -111,7 +76,7 @@ def test_new_into_a_file_is_refused(call: Callable[..., Answer], tmp_path: Path)
 # --- check -------------------------------------------------------------------------------------------------
 
 
-def test_check_tells_what_was_read(call: Callable[..., Answer], case: Path, tmp_path: Path) -> None:
+def test_check_tells_what_was_read(call: Call, case: Path, tmp_path: Path) -> None:
     before = contents(tmp_path)
     assert call("check", "case.toml") == Answer(
         0,
@@ -133,7 +98,7 @@ drivers    1
     assert contents(tmp_path) == before
 
 
-def test_check_of_a_measured_plant_has_nothing_to_doubt(call: Callable[..., Answer], tmp_path: Path) -> None:
+def test_check_of_a_measured_plant_has_nothing_to_doubt(call: Call, tmp_path: Path) -> None:
     metered = {"heat_MWh": 1.9e5, "power_net_MWh": 5e4, "fuel_MWh": 2.7e5}
     write_case(tmp_path, edited(minimal_case(), "year.metered", metered))
     answer = call("check", "case.toml")
@@ -141,7 +106,7 @@ def test_check_of_a_measured_plant_has_nothing_to_doubt(call: Callable[..., Answ
     assert answer.out.endswith("\n\nNothing in it is doubtful.\n")
 
 
-def test_check_tells_what_is_doubtful(call: Callable[..., Answer], tmp_path: Path) -> None:
+def test_check_tells_what_is_doubtful(call: Call, tmp_path: Path) -> None:
     data = edited(minimal_case(), "finance.discount_rate", 0.4)
     write_case(tmp_path, edited(data, "finance.inflation", 0.3))
     answer = call("check", "case.toml")
@@ -154,7 +119,7 @@ def test_check_tells_what_is_doubtful(call: Callable[..., Answer], tmp_path: Pat
     )
 
 
-def test_check_folds_long_lists(call: Callable[..., Answer], tmp_path: Path) -> None:
+def test_check_folds_long_lists(call: Call, tmp_path: Path) -> None:
     data = minimal_case()
     item = data["capex"]["items"][0]
     data["capex"]["items"] = [item | {"key": f"an-item-with-number-{number}"} for number in range(9)]
@@ -179,7 +144,7 @@ def rows_of(text: str) -> dict[str, list[str]]:
     return {first: rest for first, *rest in cells if first}
 
 
-def test_balance_prints_the_table_and_nothing_else(call: Callable[..., Answer], case: Path) -> None:
+def test_balance_prints_the_table_and_nothing_else(call: Call, case: Path) -> None:
     answer = call("balance", "case.toml")
     loaded = load_case(case)
     title = "A small plant, design point: 40 MW, 98/46 °C"
@@ -187,9 +152,7 @@ def test_balance_prints_the_table_and_nothing_else(call: Callable[..., Answer], 
     assert answer.out == output.balance_table(study.balances(loaded.case), title, states=False) + "\n"
 
 
-def test_the_table_has_the_numbers_of_the_json(
-    call: Callable[..., Answer], case: Path, tmp_path: Path
-) -> None:
+def test_the_table_has_the_numbers_of_the_json(call: Call, case: Path, tmp_path: Path) -> None:
     answer = call("balance", "case.toml", "--json", "new/balance.json", "--option", "two-stage")
     assert (answer.status, answer.err) == (0, "")
     assert answer.out.endswith("\nwrote new/balance.json\n")
@@ -233,9 +196,7 @@ def test_the_table_has_the_numbers_of_the_json(
     assert "single" not in rows
 
 
-def test_balance_elsewhere_and_to_standard_output(
-    call: Callable[..., Answer], case: Path, tmp_path: Path
-) -> None:
+def test_balance_elsewhere_and_to_standard_output(call: Call, case: Path, tmp_path: Path) -> None:
     before = contents(tmp_path)
     answer = call("balance", "case.toml", "--at", "25,85,48", "--json", "-")
     assert (answer.status, answer.err) == (0, "")
@@ -252,7 +213,7 @@ def test_balance_elsewhere_and_to_standard_output(
     assert contents(tmp_path) == before
 
 
-def test_balance_elsewhere_says_where_and_what_is_unusual(call: Callable[..., Answer], case: Path) -> None:
+def test_balance_elsewhere_says_where_and_what_is_unusual(call: Call, case: Path) -> None:
     answer = call("balance", "case.toml", "--at", "12,77,51")
     assert answer.status == 0
     assert answer.out.startswith("A small plant, off design: 12 MW, 77/51 °C\n")
@@ -282,7 +243,7 @@ def limited_case(folder: Path, **limits: float) -> Path:
     return write_case(folder, data)
 
 
-def remarks_at(call: Callable[..., Answer], *more: str) -> dict[str, list[str]]:
+def remarks_at(call: Call, *more: str) -> dict[str, list[str]]:
     """The remarks of every option in the JSON, after a look that each is printed as a line."""
     told = json.loads(call("balance", "case.toml", "--json", "-", *more).out)["options"]
     printed = " ".join(call("balance", "case.toml", *more).out.split())
@@ -292,19 +253,19 @@ def remarks_at(call: Callable[..., Answer], *more: str) -> dict[str, list[str]]:
     return {one["key"]: one["remarks"] for one in told}
 
 
-def test_within_all_limits_there_is_nothing_to_remark(call: Callable[..., Answer], tmp_path: Path) -> None:
+def test_within_all_limits_there_is_nothing_to_remark(call: Call, tmp_path: Path) -> None:
     limited_case(tmp_path, max_heat_MW=40.0, max_fuel_MW=70.0, generator_limit_MW=16.0)
     assert remarks_at(call) == {"single": [], "two-stage": []}
 
 
-def test_more_live_steam_than_there_is_is_remarked(call: Callable[..., Answer], case: Path) -> None:
+def test_more_live_steam_than_there_is_is_remarked(call: Call, case: Path) -> None:
     assert remarks_at(call, "--at", "80,85,48") == {
         "single": ["38.5 kg/s of live steam, above max_kg_s 20: the plant cannot do this"],
         "two-stage": ["38.8 kg/s of live steam, above max_kg_s 20: the plant cannot do this"],
     }
 
 
-def test_limits_are_remarked_at_the_design_point_too(call: Callable[..., Answer], tmp_path: Path) -> None:
+def test_limits_are_remarked_at_the_design_point_too(call: Call, tmp_path: Path) -> None:
     limited_case(tmp_path, max_heat_MW=39.99, max_fuel_MW=62.0, generator_limit_MW=14.5)
     single, two = remarks_at(call).values()
     heat = "40.0 MW of heat, above max_heat_MW 39.99: the plant cannot do this"
@@ -323,9 +284,7 @@ def write_free(folder: Path) -> Path:
     return write_case(folder / "free", minimal_case())
 
 
-def test_below_its_minimum_flow_the_plant_would_stand_still(
-    call: Callable[..., Answer], case: Path, tmp_path: Path
-) -> None:
+def test_below_its_minimum_flow_the_plant_would_stand_still(call: Call, case: Path, tmp_path: Path) -> None:
     still = "0.5 kg/s of live steam, below min_kg_s 6: the plant would stand still"
     assert remarks_at(call, "--at", "1,85,48") == {"single": [still], "two-stage": [still]}
     told = {one["key"]: one for one in json.loads(call("balance", "case.toml", "--json", "-").out)["options"]}
@@ -338,17 +297,13 @@ def test_below_its_minimum_flow_the_plant_would_stand_still(
     assert two == [f"the baseline would stand still here, below min_kg_s {between:g}, and the option with it"]
 
 
-def test_an_option_that_runs_as_the_baseline_shows_the_old_condenser_alone(
-    call: Callable[..., Answer], case: Path
-) -> None:
+def test_an_option_that_runs_as_the_baseline_shows_the_old_condenser_alone(call: Call, case: Path) -> None:
     told = json.loads(call("balance", "case.toml", "--at", "1,85,48", "--json", "-").out)["options"]
     assert [one["runs_as_baseline"] for one in told] == [False, True]
     assert [[stage["area_m2"] for stage in one["stages"]] for one in told] == [[None], [None]]
 
 
-def test_a_tail_with_a_generator_of_its_own_loses_power_at_its_own_limit(
-    call: Callable[..., Answer], tmp_path: Path
-) -> None:
+def test_a_tail_with_a_generator_of_its_own_loses_power_at_its_own_limit(call: Call, tmp_path: Path) -> None:
     data = edited(minimal_case(), "tail", {"efficiency": 0.8, "generator_limit_MW": 0.5})
     write_case(tmp_path, data)
     single, two = remarks_at(call).values()
@@ -357,7 +312,7 @@ def test_a_tail_with_a_generator_of_its_own_loses_power_at_its_own_limit(
     assert re.fullmatch(r"\d\.\d{3} MW of power above the tail's generator_limit_MW 0\.5 is lost", two[0])
 
 
-def test_no_line_is_wider_than_a_page(call: Callable[..., Answer], tmp_path: Path) -> None:
+def test_no_line_is_wider_than_a_page(call: Call, tmp_path: Path) -> None:
     data = edited(minimal_case(), "options.two-stage.key", "two-stage-with-a-very-long-name-" * 3)
     data["study"]["title"] = "A plant with a title that goes on and on " * 5
     write_case(tmp_path, data)
@@ -402,7 +357,7 @@ def at_once(solved: study.Study, monkeypatch: pytest.MonkeyPatch) -> study.Study
     return solved
 
 
-def test_run_writes_workbook_and_json_and_sums_up(call: Callable[..., Answer], tmp_path: Path) -> None:
+def test_run_writes_workbook_and_json_and_sums_up(call: Call, tmp_path: Path) -> None:
     short_case(tmp_path)
     before = contents(tmp_path)
     answer = call("run", "case.toml", "--json", "results/case.json")
@@ -421,7 +376,7 @@ def test_run_writes_workbook_and_json_and_sums_up(call: Callable[..., Answer], t
 
 
 def test_run_to_standard_output_prints_the_json_alone(
-    call: Callable[..., Answer], at_once: study.Study, tmp_path: Path
+    call: Call, at_once: study.Study, tmp_path: Path
 ) -> None:
     short_case(tmp_path)
     answer = call("run", "case.toml", "--json", "-", "--out", "mine.XLSX")
@@ -430,7 +385,7 @@ def test_run_to_standard_output_prints_the_json_alone(
     assert (tmp_path / "mine.XLSX").read_bytes() == workbook_bytes(at_once)
 
 
-def test_run_can_be_quiet(call: Callable[..., Answer], at_once: study.Study, tmp_path: Path) -> None:
+def test_run_can_be_quiet(call: Call, at_once: study.Study, tmp_path: Path) -> None:
     data = edited(edited(minimal_case(), "drivers", []), "finance.discount_rate", 0.4)
     write_case(tmp_path, data)
     doubt = f"2 doubts:\n{UNMEASURED}  finance.discount_rate: 0.4 a year is unusually high\n"
@@ -448,7 +403,7 @@ def test_run_can_be_quiet(call: Callable[..., Answer], at_once: study.Study, tmp
     ("place", "name"), [(study, "run_study"), (book, "workbook_bytes"), (results, "study_json")]
 )
 def test_a_run_that_fails_leaves_the_old_report_alone(
-    call: Callable[..., Answer],
+    call: Call,
     at_once: study.Study,
     tmp_path: Path,
     monkeypatch: pytest.MonkeyPatch,
@@ -540,7 +495,7 @@ def test_a_run_that_fails_leaves_the_old_report_alone(
     ids=lambda value: " ".join(value) if isinstance(value, list) else "",
 )
 def test_a_wrong_call_is_told_why_and_leaves_nothing(
-    call: Callable[..., Answer], case: Path, tmp_path: Path, arguments: Sequence[str], told: str
+    call: Call, case: Path, tmp_path: Path, arguments: Sequence[str], told: str
 ) -> None:
     (tmp_path / "folder").mkdir()
     (tmp_path / "folder.xlsx").mkdir()
@@ -550,7 +505,7 @@ def test_a_wrong_call_is_told_why_and_leaves_nothing(
     assert contents(tmp_path) == before
 
 
-def test_design_choice_prints_every_curve(call: Callable[..., Answer], case: Path) -> None:
+def test_design_choice_prints_every_curve(call: Call, case: Path) -> None:
     answer = call("optimum", "case.toml", "--json", "choice.json")
     assert (answer.status, answer.err) == (0, "")
     assert max(map(len, answer.out.splitlines())) <= 100
@@ -675,7 +630,7 @@ def refused(answer: Answer, faults: Sequence[str]) -> None:
 
 @pytest.mark.parametrize("fault", sorted(WRONG_CASES))
 def test_a_wrong_case_is_told_fault_by_fault_and_leaves_nothing(
-    call: Callable[..., Answer], tmp_path: Path, fault: str
+    call: Call, tmp_path: Path, fault: str
 ) -> None:
     data, faults = WRONG_CASES[fault]
     write_case(tmp_path, data)
@@ -725,9 +680,7 @@ def wrong_hours() -> Mapping[str, tuple[str, list[str]]]:
 
 
 @pytest.mark.parametrize("fault", ["8759 rows", "a repeated hour", "text in a number column"])
-def test_wrong_hours_are_told_by_row_and_leave_nothing(
-    call: Callable[..., Answer], tmp_path: Path, fault: str
-) -> None:
+def test_wrong_hours_are_told_by_row_and_leave_nothing(call: Call, tmp_path: Path, fault: str) -> None:
     hours, faults = wrong_hours()[fault]
     write_case(tmp_path, minimal_case(), hours)
     before = contents(tmp_path)
@@ -736,7 +689,7 @@ def test_wrong_hours_are_told_by_row_and_leave_nothing(
     assert contents(tmp_path) == before
 
 
-def test_what_is_no_toml_is_told_by_line(call: Callable[..., Answer], tmp_path: Path) -> None:
+def test_what_is_no_toml_is_told_by_line(call: Call, tmp_path: Path) -> None:
     (tmp_path / "case.toml").write_text('[study]\ntitle = "open\n')
     answer = call("check", "case.toml")
     assert (answer.status, answer.out) == (2, "")
@@ -746,15 +699,13 @@ def test_what_is_no_toml_is_told_by_line(call: Callable[..., Answer], tmp_path: 
 # --- what else can go wrong --------------------------------------------------------------------------------
 
 
-def test_no_solution_is_status_1(
-    call: Callable[..., Answer], case: Path, monkeypatch: pytest.MonkeyPatch
-) -> None:
+def test_no_solution_is_status_1(call: Call, case: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr(study, "balances", fails_with(SolveError("no root between 1 and 2")))
     assert call("balance", "case.toml") == Answer(1, "", "Error: no root between 1 and 2\n")
 
 
 def test_a_fault_of_the_program_is_status_1_without_a_traceback(
-    call: Callable[..., Answer], case: Path, monkeypatch: pytest.MonkeyPatch
+    call: Call, case: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     monkeypatch.setattr(study, "balances", fails_with(ZeroDivisionError("line one\n line two")))
     assert call("balance", "case.toml") == Answer(
@@ -765,9 +716,7 @@ def test_a_fault_of_the_program_is_status_1_without_a_traceback(
     )
 
 
-def test_an_interruption_is_status_1(
-    call: Callable[..., Answer], case: Path, monkeypatch: pytest.MonkeyPatch
-) -> None:
+def test_an_interruption_is_status_1(call: Call, case: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     def interrupted(*arguments: Any) -> Any:
         raise KeyboardInterrupt
 

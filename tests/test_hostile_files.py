@@ -4,56 +4,20 @@ import errno
 import os
 import random
 from collections.abc import Callable
-from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
 import pytest
+from calls import Answer, Call, contents
 from cases import SERIES, csv_text, minimal_case, synthetic_hours, toml_text, write_case
 
-from appraise import cli, files, study
+from appraise import files, study
 from appraise.case.load import load_case
 from appraise.errors import SolveError
 
 Read = pytest.CaptureFixture[str]
-Call = Callable[..., "Answer"]
 IS_ROOT = hasattr(os, "geteuid") and os.geteuid() == 0
 FULL = OSError(errno.ENOSPC, "No space left on device")
-
-
-@dataclass(frozen=True)
-class Answer:
-    """What one call came to."""
-
-    status: int
-    out: str
-    err: str
-
-
-@pytest.fixture
-def call(capsys: Read, monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> Call:
-    """Calls the program in a folder of its own."""
-    monkeypatch.chdir(tmp_path)
-    monkeypatch.delenv("APPRAISE_DEBUG", raising=False)
-
-    def called(*arguments: str) -> Answer:
-        capsys.readouterr()
-        status = cli.main(arguments)
-        told = capsys.readouterr()
-        return Answer(status, told.out, told.err)
-
-    return called
-
-
-@pytest.fixture
-def case(tmp_path: Path) -> Path:
-    """The small case in the folder of the calls."""
-    return write_case(tmp_path, minimal_case())
-
-
-def contents(folder: Path) -> dict[str, bytes]:
-    """Every file below a folder, hidden ones too."""
-    return {str(path.relative_to(folder)): path.read_bytes() for path in folder.rglob("*") if path.is_file()}
 
 
 def fault(text: str) -> Answer:
