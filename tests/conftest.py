@@ -1,4 +1,4 @@
-"""What every test has: arithmetic that raises, steady draws of examples, calls, the demo study solved once."""
+"""What every test has: arithmetic that raises, steady draws of examples, calls, the demo study."""
 
 import os
 from collections.abc import Iterator
