@@ -9,9 +9,7 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import ArrayLike, NDArray
-
-from appraise.errors import SolveError
+from numpy.typing import NDArray
 
 Array = NDArray[np.float64]
 
@@ -126,16 +124,6 @@ class Fit2:
         rows = self.series(long.ravel())
         rows *= chebyshev_basis((2.0 * short.ravel() - (low + high)) / (high - low), len(rows))
         return np.asarray(rows.sum(axis=0).reshape(x.shape))
-
-
-def require_finite(name: str, values: ArrayLike) -> Array:
-    """Return `values` as an array, or raise SolveError naming the first element that is not finite."""
-    array = np.asarray(values, dtype=float)
-    bad = ~np.isfinite(array)
-    if bad.any():
-        first = int(np.flatnonzero(bad.ravel())[0])
-        raise SolveError(f"{name}: element {first} of {array.size} is not finite")
-    return array
 
 
 @dataclass(frozen=True, slots=True, eq=False)

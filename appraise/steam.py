@@ -41,7 +41,6 @@ with _silenced_stdout():
 _FLUID = "IF97::Water"
 _KELVIN = 273.15
 _PASCAL = 1e5
-CRITICAL_BAR = 220.64
 
 
 def _call(output: str, name1: str, value1: Array, name2: str, value2: Array) -> Array:

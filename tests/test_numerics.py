@@ -6,8 +6,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from numpy.polynomial import chebyshev
 
-from appraise.errors import SolveError
-from appraise.numerics import Fit, Fit2, chebyshev_basis, chebyshev_nodes, fixed_point, require_finite
+from appraise.numerics import Fit, Fit2, chebyshev_basis, chebyshev_nodes, fixed_point
 
 STEADY = settings(derandomize=True, deadline=None, max_examples=40)
 
@@ -71,17 +70,6 @@ def test_a_fit_knows_its_range() -> None:
     plane = Fit2.of(lambda x, y: x + y, (0.0, 1.0), (2.0, 3.0), (3, 3))
     inside = plane.covers(np.array([0.5, 0.5, 1.1, np.nan]), np.array([2.5, 3.5, 2.5, 2.5]))
     assert inside.tolist() == [True, False, False, False]
-
-
-# --- loudness ---------------------------------------------------------------------------------------------
-
-
-@pytest.mark.parametrize("bad", [np.nan, np.inf, -np.inf])
-def test_require_finite_names_the_first_bad_element(bad: float) -> None:
-    with pytest.raises(SolveError) as raised:
-        require_finite("exhaust pressure", [[1.0, 2.0], [bad, bad]])
-    assert str(raised.value) == "exhaust pressure: element 2 of 4 is not finite"
-    assert require_finite("flow", [1, 2]).tolist() == [1.0, 2.0]
 
 
 # --- fixed points -----------------------------------------------------------------------------------------

@@ -96,7 +96,6 @@ def _blank(leaf: Leaf) -> str:
 
 _LEFT_OUT = frozenset({"Case.notes", "Option.key", "CapexItem.key"})  # keys are in the path already
 _ONLY_GIVEN = frozenset({"OwnTail", "OwnNewCondenser", "Correlation", "Distribution"})
-_OF_SHARES = frozenset({"amount", "correlation", "share_of", "share", "currency", "year", "per"})
 
 
 def _of_table(table: Table, path: str, words: str, money: str) -> Iterator[Leaf]:

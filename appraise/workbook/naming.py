@@ -50,11 +50,6 @@ class Timeline:
         return [self.first_year - self.spend + t for t in range(self.number)]
 
     @property
-    def first_column(self) -> str:
-        """Letters of the column of t = 0."""
-        return column(year_column(0))
-
-    @property
     def last_column(self) -> str:
         """Letters of the column of the last t."""
         return column(year_column(self.number - 1))
